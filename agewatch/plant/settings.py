@@ -1,0 +1,291 @@
+"""The settings of a plant, as its TOML files give them. Validated once, then only read.
+
+Every model refuses unknown keys. `agewatch/plant/settings_file.py` reads the files and turns every fault into a
+line that names file, key and what is allowed.
+"""
+
+from __future__ import annotations
+
+import re
+from datetime import timedelta
+from typing import Annotated, Literal, Self
+from urllib.parse import urlsplit
+from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
+
+from pydantic import AwareDatetime, BaseModel, BeforeValidator, ConfigDict, Field, model_validator
+
+from agewatch.plant.tables import TABLES
+
+_DURATION = re.compile(r"\s*(\d+(?:\.\d+)?)\s*(s|min|h|d)\s*")
+_UNIT_S = {"s": 1.0, "min": 60.0, "h": 3600.0, "d": 86400.0}
+
+
+def _duration(value: object) -> object:
+    if isinstance(value, timedelta):
+        return value
+    match = _DURATION.fullmatch(value) if isinstance(value, str) else None
+    if match is None:
+        raise ValueError('allowed is a number and a unit in quotes: "30 s", "5 min", "24 h" or "14 d"')
+    return timedelta(seconds=float(match[1]) * _UNIT_S[match[2]])
+
+
+def _zone(value: object) -> object:
+    if not isinstance(value, str):
+        raise ValueError('allowed is the name of a time zone in quotes, for example "Europe/Prague" or "UTC"')
+    try:
+        ZoneInfo(value)
+    except (ZoneInfoNotFoundError, ValueError):
+        raise ValueError(
+            f'no time zone is named "{value}"; allowed is a name such as "Europe/Prague" or "UTC"'
+        ) from None
+    return value
+
+
+Duration = Annotated[timedelta, BeforeValidator(_duration)]
+TimeZone = Annotated[str, BeforeValidator(_zone)]
+Positive = Annotated[float, Field(gt=0, allow_inf_nan=False)]
+NotNegative = Annotated[float, Field(ge=0, allow_inf_nan=False)]
+Share = Annotated[float, Field(ge=0, le=1)]
+
+
+class _Section(BaseModel):
+    model_config = ConfigDict(extra="forbid", frozen=True)
+
+
+class Site(_Section):
+    """The plant."""
+
+    name: str
+    timezone: TimeZone = "UTC"
+    """Zone in which the board and the reports show times."""
+
+
+class StoreSettings(_Section):
+    """Where the daemon keeps what it knows."""
+
+    url: str = "sqlite:///var/agewatch.db"
+
+
+class ClockSettings(_Section):
+    """The system's clock, or a replay of the past at a rate."""
+
+    kind: Literal["system", "replay"] = "system"
+    start: AwareDatetime | None = None
+    rate: Positive = 1.0
+
+    @model_validator(mode="after")
+    def _replay_has_a_start(self) -> Self:
+        if self.kind == "replay" and self.start is None:
+            raise ValueError('a replay clock needs start = "2026-05-01T00:00:00Z" (any RFC 3339 time)')
+        return self
+
+
+class Feed(_Section):
+    """One source of one canonical table."""
+
+    table: Literal["coils", "moves", "presses", "temperatures", "outlook", "lab"]
+    path: str
+    """File or pattern, relative to the settings file."""
+    every: Duration = timedelta(minutes=5)
+    timezone: TimeZone = "UTC"
+    """Zone of times that carry no offset."""
+    local_times: Literal["refuse", "earlier", "later"] = "refuse"
+    """What an hour that occurs twice (or never) when the clocks change stands for."""
+    columns: dict[str, str] = {}
+    """Canonical name = the source's own name."""
+    separator: Literal[",", ";", "\t", "auto"] = "auto"
+    decimal: Literal[".", ","] = "."
+    encoding: str = "utf-8"
+    time_format: str = ""
+    """A strptime pattern for times that are not RFC 3339."""
+    stale_after: Duration | None = None
+    """Alarm when nothing new came for this long."""
+
+    @model_validator(mode="after")
+    def _columns_are_canonical(self) -> Self:
+        known = TABLES[self.table].column_names
+        for name in self.columns:
+            if name not in known and self.table != "temperatures":
+                raise ValueError(f"columns.{name} is no column of {self.table}; allowed are {', '.join(known)}")
+        return self
+
+    @property
+    def name(self) -> str:
+        """How messages and alarms call this feed."""
+        return f"{self.table}:{self.path}"
+
+
+class Location(_Section):
+    """A place where coils lie, and how it exchanges heat with them."""
+
+    sensors: list[str] = []
+    kind: Literal["bay", "yard", "transport"] = "bay"
+    surface_w_m2k: Positive | None = None
+    """Heat transfer of a coil's surface; silent: 6 for bare coils, 9 for wrapped ones."""
+    lag_factor: Positive = 1.25
+    lag_h: Positive | None = None
+    """Time constant of every coil here, in place of the one that its size implies."""
+
+
+class Channel(_Section):
+    """One diffusing solute of a grade."""
+
+    activation_kj_mol: Positive = 84.1
+    activation_spread_kj_mol: NotNegative = 0.0
+    exponent: Annotated[float, Field(gt=0, le=2)] = 2 / 3
+    tau_days: Positive | None = None
+    tau_spread: NotNegative = 0.6
+    dislocation_density_per_m2: Positive | None = None
+    density_per_percent_temper: NotNegative = 0.0
+
+    @model_validator(mode="after")
+    def _one_rate(self) -> Self:
+        if (self.tau_days is None) == (self.dislocation_density_per_m2 is None):
+            raise ValueError("give either tau_days or dislocation_density_per_m2, not both and not neither")
+        return self
+
+
+class Grade(_Section):
+    """How a steel ages, and its tensile values where the certificate is silent."""
+
+    aging: bool = True
+    fitted: bool = False
+    """True once this plant's own tests support the numbers; until then dates are marked `starting point`."""
+    source: str = ""
+    rp02_mpa: Positive
+    rm_mpa: Positive
+    n_value: Annotated[float, Field(gt=0, lt=1)]
+    temper_elongation_pct: NotNegative = 1.0
+    certificate_spread: NotNegative = 0.0
+    """Scatter of ln Rp0.2 where the certificate is silent."""
+    rise_saturation_mpa: Positive = 30.0
+    rise_saturation_spread: NotNegative = 0.15
+    masking_mpa: NotNegative = 0.0
+    masking_spread_mpa: NotNegative = 0.0
+    channel: dict[Literal["carbon", "nitrogen"], Channel] = {}
+
+    @model_validator(mode="after")
+    def _can_be_assessed(self) -> Self:
+        if self.aging and not self.channel:
+            raise ValueError("an aging grade needs at least one channel, for example [grade.NAME.channel.carbon]")
+        if self.rm_mpa <= self.rp02_mpa:
+            raise ValueError("rm_mpa must be above rp02_mpa")
+        return self
+
+
+class Part(_Section):
+    """What is pressed from a coil, and how much plateau it bears."""
+
+    ype_limit_pct: Positive | None = None
+    exposed: bool = False
+    raise_risk: Share | None = None
+    """Risk from which the coil is to be pulled; silent: 0.10 for exposed parts, 0.25 for others."""
+    lead_time: Duration = timedelta(hours=24)
+    """What logistics needs to bring a coil forward."""
+
+    @property
+    def pull_risk(self) -> float:
+        return self.raise_risk if self.raise_risk is not None else (0.10 if self.exposed else 0.25)
+
+
+class DefaultCoil(_Section):
+    """The coil that a missing mass, width or bore stands for."""
+
+    mass_kg: Positive = 15_000.0
+    width_mm: Positive = 1250.0
+    bore_mm: Positive = 610.0
+
+
+class OutlookSettings(_Section):
+    """Temperatures to come."""
+
+    horizon_days: Annotated[float, Field(gt=0, le=1000)] = 120.0
+    pull_horizon_days: Annotated[float, Field(gt=0, le=1000)] = 14.0
+    """Without a planned pressing, a return inside this many days asks for a pull."""
+    monthly_normals_c: Annotated[list[float], Field(min_length=12, max_length=12)] | None = None
+    """Mean air temperature of January … December, for the time that no outlook feed covers."""
+
+
+class Screening(_Section):
+    """When a reading is not believed."""
+
+    lowest_c: float = -40.0
+    highest_c: float = 65.0
+    gap: Duration = timedelta(hours=3)
+    """Longest silence that a straight line may bridge without counting as estimated."""
+
+
+class AlarmSettings(_Section):
+    """When a condition becomes an alarm, and when it ends."""
+
+    on_delay: Duration = timedelta(minutes=0)
+    off_delay: Duration = timedelta(minutes=30)
+    sensor_silent_after: Duration = timedelta(hours=3)
+    rejects_limit: Annotated[int, Field(ge=0)] = 100
+    """Open rejects of one feed from which it is alarmed."""
+
+
+class DaemonSettings(_Section):
+    """The work of the daemon."""
+
+    assess_every: Duration = timedelta(minutes=1)
+    control_socket: str = "var/agewatch.sock"
+    http_port: Annotated[int, Field(ge=0, le=65535)] = 9464
+    """Port of /livez, /readyz and /metrics on loopback; 0 turns them off."""
+
+
+class Endpoint(_Section):
+    """A receiver of messages."""
+
+    name: str
+    url: str
+    secret_env: str | None = None
+    secret_file: str | None = None
+    types: list[str] = []
+    """Message types that it takes; empty: all."""
+    connect_timeout: Duration = timedelta(seconds=5)
+    read_timeout: Duration = timedelta(seconds=15)
+    ca_file: str | None = None
+    attempts: Annotated[int, Field(ge=1)] = 12
+
+    @model_validator(mode="after")
+    def _can_be_reached_safely(self) -> Self:
+        parts = urlsplit(self.url)
+        loopback = parts.hostname in ("127.0.0.1", "localhost", "::1")
+        if parts.scheme != "https" and not (parts.scheme == "http" and loopback):
+            raise ValueError("url must begin with https:// (http:// is allowed for loopback only)")
+        if (self.secret_env is None) == (self.secret_file is None):
+            raise ValueError("name the signing secret by either secret_env or secret_file; it is never in the settings")
+        return self
+
+
+class Settings(_Section):
+    """All settings of a plant."""
+
+    site: Site
+    store: StoreSettings = StoreSettings()
+    clock: ClockSettings = ClockSettings()
+    feed: list[Feed] = []
+    location: dict[str, Location]
+    grade: dict[str, Grade]
+    part: dict[str, Part] = {}
+    default_coil: DefaultCoil = DefaultCoil()
+    outlook: OutlookSettings = OutlookSettings()
+    screening: Screening = Screening()
+    alarm: AlarmSettings = AlarmSettings()
+    daemon: DaemonSettings = DaemonSettings()
+    endpoint: list[Endpoint] = []
+
+    @model_validator(mode="after")
+    def _names_are_used_once(self) -> Self:
+        owner: dict[str, str] = {}
+        for place, location in self.location.items():
+            for sensor in location.sensors:
+                if sensor in owner:
+                    raise ValueError(f"sensor {sensor} stands under location {owner[sensor]} and {place}; one is allowed")
+                owner[sensor] = place
+        names = [endpoint.name for endpoint in self.endpoint]
+        for name in names:
+            if names.count(name) > 1:
+                raise ValueError(f"two endpoints are named {name}; each needs its own name")
+        return self
