@@ -141,7 +141,7 @@ Event = Observed | Acknowledged
 
 @dataclass(frozen=True, slots=True)
 class Transition:
-    """For the journal. Before and after are alike where a standing alarm moved or became more or less urgent."""
+    """For the journal. Before and after are alike where a standing alarm moved or changed urgency."""
 
     kind: AlarmKind
     subject: str
@@ -208,8 +208,8 @@ def replay(transitions: Iterable[Transition]) -> AlarmState:
     for step in transitions:
         if step.before != state or (step.before, step.after) not in lawful:
             raise StoreError(
-                f"journal of {step.kind} {step.subject}: goes from {step.before} to {step.after} while the alarm "
-                f"is {state}; rows are missing or were changed: restore the store from a backup"
+                f"journal of {step.kind} {step.subject}: goes from {step.before} to {step.after} while the "
+                f"alarm is {state}; rows are missing or were changed: restore the store from a backup"
             )
         state = step.after
     return state

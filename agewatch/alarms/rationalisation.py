@@ -38,18 +38,18 @@ RATIONALISATION: Mapping[AlarmKind, Rationalisation] = {
         title="Yield point returns before pressing",
         cause="The coil ages faster than its pressing comes: the store is warm, or the coil waits long.",
         consequence="Panels pressed from it may show stretcher strains and be scrapped.",
-        action="Bring the coil forward and press it before the time shown, move it to a cooler place, or give it "
-        "to a part that bears the plateau; if none can be done in time, have it tested.",
+        action="Bring the coil forward and press it before the time shown, move it to a cooler place, or "
+        "give it to a part that bears the plateau; if none can be done in time, have it tested.",
         time_to_respond="Before the latest time to act: the return or the pressing, less the lead time.",
         priority=Priority.LOW,
         cautions=(ESTIMATE_CAUTION, LIFTING_CAUTION),
     ),
     AlarmKind.RETURNED_IN_STORE: Rationalisation(
         title="Yield point has returned in store",
-        cause="By the middle of the estimate, or by a laboratory test, the plateau exceeds what the part bears.",
+        cause="By the middle of the estimate, or by a test, the plateau exceeds what the part bears.",
         consequence="Pressed as it is, the coil will probably show stretcher strains on visible panels.",
-        action="Hold the coil and have it tested. If the test agrees: temper roll it again, level it just "
-        "before pressing, or use it for a part that is not seen.",
+        action="Hold the coil and have it tested. If the test agrees: temper roll it again, level it "
+        "just before pressing, or use it for a part that is not seen.",
         time_to_respond="Before its pressing; take it off the plan first.",
         priority=Priority.LOW,
         cautions=(ESTIMATE_CAUTION, LIFTING_CAUTION),
@@ -58,8 +58,8 @@ RATIONALISATION: Mapping[AlarmKind, Rationalisation] = {
         title="Coil cannot be assessed",
         cause="Its grade or location is not in the settings, or no temperature is known where it lies.",
         consequence="Nobody is warned when this coil ages.",
-        action="Mend what the reason names: the coil's row in its feed, the settings, or the sensor. Until then "
-        "judge the coil by its shelf life.",
+        action="Mend what the reason names: the coil's row in its feed, the settings, or the sensor. Until "
+        "then judge the coil by its shelf life.",
         time_to_respond="Before its pressing; without a planned one, within a day.",
         priority=Priority.LOW,
         cautions=(ESTIMATE_CAUTION,),
@@ -68,7 +68,7 @@ RATIONALISATION: Mapping[AlarmKind, Rationalisation] = {
         title="Sensor is silent",
         cause="No reading has come from this sensor: battery, cable, gateway or its feed.",
         consequence="Its location rests on the other sensors there, or on estimated temperatures.",
-        action="Look at the sensor and at the feed that carries it; replace it or take it out of the settings.",
+        action="Look at the sensor and the feed that carries it; replace it or take it out of the settings.",
         time_to_respond="Within a day.",
         priority=Priority.LOW,
     ),
@@ -92,7 +92,7 @@ RATIONALISATION: Mapping[AlarmKind, Rationalisation] = {
         title="Feed brings nothing new or cannot be read",
         cause="The program that writes it has stopped, the share is not mounted, or the file is damaged.",
         consequence="Coils, moves, pressings or temperatures are those of the last good reading.",
-        action="Ask the owner of the feed; check path and rights. The file stays untouched and is tried again.",
+        action="Ask the owner of the feed; check path and rights. The file is left alone and tried again.",
         time_to_respond="Within the shift.",
         priority=Priority.MEDIUM,
     ),
@@ -124,8 +124,8 @@ RATIONALISATION: Mapping[AlarmKind, Rationalisation] = {
         title="The store cannot be written or is damaged",
         cause="The disk is full or failing, or another program holds the file.",
         consequence="Nothing new is kept and no new alarm can be raised: what the board shows grows old.",
-        action="Call plant IT: free space, check the disk, restore the last backup if need be. Until then go by "
-        "shelf life.",
+        action="Call plant IT: free space, check the disk, restore the last backup if need be. Until then go "
+        "by shelf life.",
         time_to_respond="At once.",
         priority=Priority.HIGH,
     ),

@@ -18,7 +18,7 @@ Names = NDArray[np.object_]
 Flags = NDArray[np.bool_]
 
 DEADBAND = 0.5
-"""A standing pull ends below half the level that raised it, or beyond twice the horizon: where `watch` ends."""
+"""A standing pull ends below half the level that raised it, or beyond twice the horizon, as `watch` does."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -130,7 +130,7 @@ def _active(kind: AlarmKind, coils: CoilColumns, raised: Flags, at_s: float, pul
 
 
 def _pull_reached(coils: CoilColumns, at_s: float, pull_horizon_s: float, share: float) -> Flags:
-    """Whether the risk is at `share` of its level or, with no pressing, P10 that share as near as the horizon."""
+    """Whether the risk is at `share` of its level or, with no pressing, P10 as near for the horizon."""
     return np.where(
         np.isfinite(coils.press_s),
         coils.return_risk >= share * coils.pull_risk,

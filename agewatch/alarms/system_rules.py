@@ -121,7 +121,7 @@ def stale_feeds(feeds: Iterable[Feed], at_s: float) -> list[Condition]:
 def high_rejects(
     open_rejects: Mapping[str, int], alarms: Mapping[AlarmKey, Alarm], at_s: float, limit: int
 ) -> list[Condition]:
-    """rejects-high for every feed in `open_rejects` (feed → open rejects): active from `limit`, with a deadband."""
+    """rejects-high for every feed in `open_rejects` (feed → open rejects): active from `limit` on."""
     conditions = []
     for feed, count in open_rejects.items():
         standing = alarms.get((AlarmKind.REJECTS_HIGH, feed))
