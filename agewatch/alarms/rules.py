@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Collection, Iterator, Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from math import isnan
 
@@ -11,8 +11,8 @@ from numpy.typing import NDArray
 
 from agewatch.alarms.kinds import BY_RANK, COIL_KINDS, AlarmKind
 from agewatch.alarms.lifecycle import Alarm, AlarmKey, Detail, Observed
-from agewatch.alarms.turn import Condition, unmentioned
-from agewatch.alarms.urgency import Floats, ranks
+from agewatch.alarms.turn import Condition, ended
+from agewatch.alarms.urgency import Floats, Ranks, ranks
 
 Names = NDArray[np.object_]
 Flags = NDArray[np.bool_]
@@ -48,84 +48,116 @@ class CoilColumns:
 
 
 @dataclass(frozen=True, slots=True)
-class _Standing:
-    """The unsettled alarms of one kind beside the rows of their coils."""
+class _Told:
+    """What the unsettled alarms of one kind last told, beside the rows of their coils: arrays (n_coils,)."""
 
     alarms: Mapping[int, Alarm]
-    raised: Flags
-    rank: NDArray[np.int8]
+    stands: Flags
+    settled: Flags
+    """Stands, and its condition was there at the last look."""
+    rank: Ranks
+    press_s: Floats
+    location: Names
 
     @classmethod
-    def of(cls, alarms: Mapping[int, Alarm], coils: int) -> _Standing:
-        raised = np.zeros(coils, dtype=bool)
-        rank = np.full(coils, BY_RANK[-1].rank, dtype=np.int8)
+    def by(cls, alarms: Mapping[int, Alarm], coils: int, at_s: float) -> _Told:
+        told = cls(
+            alarms,
+            np.zeros(coils, dtype=bool),
+            np.zeros(coils, dtype=bool),
+            np.full(coils, BY_RANK[-1].rank, dtype=np.int8),
+            np.full(coils, np.nan),
+            np.full(coils, None, dtype=object),
+        )
         rows = [row for row, alarm in alarms.items() if alarm.standing]
-        raised[rows] = True
-        rank[rows] = [alarms[row].priority.rank for row in rows]
-        return cls(alarms, raised, rank)
+        standing = [alarms[row] for row in rows]
+        told.stands[rows] = True
+        told.settled[rows] = [alarm.active and (alarm.active_since_s or 0.0) <= at_s for alarm in standing]
+        told.rank[rows] = [alarm.priority.rank for alarm in standing]
+        told.press_s[rows] = np.array([alarm.detail.get("press_s") for alarm in standing], dtype=float)
+        told.location[rows] = [alarm.location for alarm in standing]
+        return told
 
 
 def coil_conditions(
     coils: CoilColumns, alarms: Mapping[AlarmKey, Alarm], at_s: float, pull_horizon_s: float
 ) -> list[Condition]:
-    """Conditions of every coil that is active or whose alarm is unsettled; other coils never become objects.
+    """Conditions of the coils whose alarm may change; all others never become objects.
 
     at_s: time of the assessment. pull_horizon_s: without a planned pressing, a P10 return inside it asks for
     a pull. What cannot be assessed keeps what stands: losing sight of a coil is no reason to call it sound.
     A coil that is not in `coils` has left the store.
     """
-    row_of = _rows(coils.coil_id, {subject for kind, subject in alarms if kind in COIL_KINDS})
+    unsettled = [alarm for alarm in alarms.values() if alarm.kind in COIL_KINDS and alarm.unsettled]
+    row_of = _rows(coils.coil_id, {alarm.subject for alarm in unsettled})
     conditions: list[Condition] = []
     for kind in COIL_KINDS:
-        standing = _Standing.of(
-            {
-                row_of[alarm.subject]: alarm
-                for alarm in alarms.values()
-                if alarm.kind is kind and alarm.unsettled and alarm.subject in row_of
-            },
-            len(coils.coil_id),
-        )
-        conditions.extend(_conditions(kind, coils, standing, at_s, pull_horizon_s))
-    present = {(kind, coil) for kind in COIL_KINDS for coil in row_of}
-    return conditions + unmentioned(alarms, COIL_KINDS, present, at_s, "the coil is no longer in store")
+        own = {
+            row_of[alarm.subject]: alarm
+            for alarm in unsettled
+            if alarm.kind == kind and alarm.subject in row_of
+        }
+        told = _Told.by(own, len(coils.coil_id), at_s)
+        conditions.extend(_conditions(kind, coils, told, at_s, pull_horizon_s))
+    conditions.extend(
+        ended(alarm, at_s, "the coil is no longer in store")
+        for alarm in unsettled
+        if alarm.subject not in row_of
+    )
+    return conditions
 
 
-def _rows(coil_id: Names, wanted: Collection[str]) -> dict[str, int]:
-    if not wanted:
-        return {}
-    return {coil: row for row, coil in enumerate(coil_id.tolist()) if coil in wanted}
+def _rows(coil_id: Names, wanted: set[str]) -> dict[str, int]:
+    """Row of each wanted coil that is there: by bisection, as coils are ordered; a scan for what it misses."""
+    coils = np.array(sorted(wanted), dtype=object)
+    near = np.searchsorted(coil_id[:-1], coils)
+    found = coil_id[near] == coils if len(coil_id) else np.zeros(len(coils), dtype=bool)
+    row_of = dict(zip(coils[found].tolist(), near[found].tolist(), strict=True))
+    if len(row_of) < len(wanted):
+        row_of |= {coil: row for row, coil in enumerate(coil_id.tolist()) if coil in wanted}
+    return row_of
 
 
 def _conditions(
-    kind: AlarmKind, coils: CoilColumns, standing: _Standing, at_s: float, pull_horizon_s: float
+    kind: AlarmKind, coils: CoilColumns, told: _Told, at_s: float, pull_horizon_s: float
 ) -> Iterator[Condition]:
-    active = _active(kind, coils, standing.raised, at_s, pull_horizon_s)
-    unseen = coils.unassessed & standing.raised & (kind is not AlarmKind.UNASSESSABLE_COIL)
+    active = _active(kind, coils, told.stands, at_s, pull_horizon_s)
+    unseen = coils.unassessed & told.stands & (kind != AlarmKind.UNASSESSABLE_COIL)
     chosen = active.copy()
-    chosen[list(standing.alarms)] = True
+    chosen[list(told.alarms)] = True
     rows = np.flatnonzero(chosen & ~unseen)
     deadline_s = _deadline_s(kind, coils, rows)
-    rank = ranks(deadline_s - at_s, coils.lead_time_s[rows], standing.rank[rows])
+    rank = ranks(deadline_s - at_s, coils.lead_time_s[rows], told.rank[rows])
+    news = ~(active[rows] & _as_told(coils, told, rows) & (rank == told.rank[rows]))
+    rows, deadline_s, rank = rows[news], deadline_s[news], rank[news]
     for row, is_active, place, detail in zip(
         rows.tolist(), active[rows].tolist(), rank.tolist(), _details(coils, rows, deadline_s), strict=True
     ):
         seen = Observed(at_s, is_active, BY_RANK[place], coils.location[row] or "", detail)
         yield Condition(kind, coils.coil_id[row], seen)
     for row in np.flatnonzero(unseen).tolist():
-        alarm = standing.alarms[row]
+        alarm = told.alarms[row]
         seen = Observed(at_s, True, alarm.priority, coils.location[row] or "", alarm.detail)
         yield Condition(kind, alarm.subject, seen)
 
 
-def _active(kind: AlarmKind, coils: CoilColumns, raised: Flags, at_s: float, pull_horizon_s: float) -> Flags:
-    if kind is AlarmKind.UNASSESSABLE_COIL:
+def _as_told(coils: CoilColumns, told: _Told, rows: NDArray[np.intp]) -> Flags:
+    """Where a settled alarm has told its place and pressing as they are: with its rank, all that it tells."""
+    press_s, told_press_s = coils.press_s[rows], told.press_s[rows]
+    same_press = (press_s == told_press_s) | (np.isnan(press_s) & np.isnan(told_press_s))
+    same_location = np.array(coils.location[rows] == told.location[rows], dtype=bool)
+    return told.settled[rows] & same_press & same_location
+
+
+def _active(kind: AlarmKind, coils: CoilColumns, stands: Flags, at_s: float, pull_horizon_s: float) -> Flags:
+    if kind == AlarmKind.UNASSESSABLE_COIL:
         return coils.unassessed
-    if kind is AlarmKind.RETURNED_IN_STORE:
+    if kind == AlarmKind.RETURNED_IN_STORE:
         return coils.held
     sound = ~(coils.held | coils.unassessed)
     return sound & (
         _pull_reached(coils, at_s, pull_horizon_s, 1.0)
-        | (raised & _pull_reached(coils, at_s, pull_horizon_s, DEADBAND))
+        | (stands & _pull_reached(coils, at_s, pull_horizon_s, DEADBAND))
     )
 
 
@@ -140,7 +172,7 @@ def _pull_reached(coils: CoilColumns, at_s: float, pull_horizon_s: float, share:
 
 def _deadline_s(kind: AlarmKind, coils: CoilColumns, rows: NDArray[np.intp]) -> Floats:
     """What the action has to come before: the pressing, and for a pull also the P10 return [s since 1970]."""
-    if kind is AlarmKind.RETURN_BEFORE_PRESS:
+    if kind == AlarmKind.RETURN_BEFORE_PRESS:
         return np.fmin(coils.press_s[rows], coils.return_p10_s[rows])
     return coils.press_s[rows]
 

@@ -53,11 +53,13 @@ def unmentioned(
     `reason` says why, for example that a coil has left the store or a sensor the settings.
     """
     return [
-        Condition(
-            alarm.kind,
-            alarm.subject,
-            Observed(at_s, False, Priority.LOW, alarm.location, {**alarm.detail, "reason": reason}),
-        )
+        ended(alarm, at_s, reason)
         for key, alarm in alarms.items()
         if alarm.kind in kinds and alarm.unsettled and key not in mentioned
     ]
+
+
+def ended(alarm: Alarm, at_s: float, reason: str) -> Condition:
+    """The condition of `alarm` is gone because its subject is."""
+    detail = {**alarm.detail, "reason": reason}
+    return Condition(alarm.kind, alarm.subject, Observed(at_s, False, Priority.LOW, alarm.location, detail))

@@ -27,7 +27,7 @@ def alarm(
 
 
 def test_one_kind_place_and_hour_are_one_group() -> None:
-    """A group lists its coils by urgency and name, has the highest priority, and counts what nobody has seen."""
+    """A group lists its coils by urgency and name, with the highest priority and the count of unseen ones."""
     groups = group(
         [
             alarm("C-3"),
