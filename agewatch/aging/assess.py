@@ -24,36 +24,11 @@ class Steels:
     channel: NDArray[np.intp]
     """Place of each channel's activation energy in the field; -1: the grade has no such channel."""
     tau_s: Floats
-    """inf where there is no channel."""
+    """inf where there is no channel, and for grades that do not age."""
     exponent: Floats
     saturation_mpa: Floats
     masking_mpa: Floats
     flow: FlowCurve
-
-    def take(self, rows: Rows) -> Steels:
-        flow = FlowCurve(
-            self.flow.strength_mpa[rows],
-            self.flow.hardening[rows],
-            self.flow.rp02_mpa[rows],
-            self.flow.pre_strain[rows],
-        )
-        return Steels(
-            self.channel[rows],
-            self.tau_s[rows],
-            self.exponent[rows],
-            self.saturation_mpa[rows],
-            self.masking_mpa[rows],
-            flow,
-        )
-
-
-def exposures_s(journey: Journey, channel: NDArray[np.intp], piece: Rows, at_s: Floats) -> Floats:
-    """Equivalent age per channel, s, (n, n_channels); zero where a grade has no such channel."""
-    exposure_s = np.zeros(channel.shape)
-    for place in range(len(journey.field.activation_j_mol)):
-        rows, slots = np.nonzero(channel == place)
-        exposure_s[rows, slots] = journey.exposure_s(place, piece[rows], at_s[rows])
-    return exposure_s
 
 
 def yield_rise_mpa(steels: Steels, exposure_s: Floats) -> Floats:
@@ -78,10 +53,10 @@ def return_s(journey: Journey, steels: Steels, coil: Rows, locking: Floats) -> F
 
     Parameters
     ----------
-    coil
-        Rows into the coils of `journey`; a coil may stand in it several times, with different `locking`.
     steels
         One row per coil of the journey.
+    coil
+        Rows into the coils of `journey`; a coil may stand in it several times, with different `locking`.
     locking
         g to reach, (n,).
 
@@ -94,17 +69,17 @@ def return_s(journey: Journey, steels: Steels, coil: Rows, locking: Floats) -> F
     piece = _piece_of_return(journey, steels, coil, locking)
     rows = np.flatnonzero(piece >= 0)
     if len(rows):
-        reached_s[rows] = _solve(journey, steels.take(coil[rows]), piece[rows], locking[rows])
+        reached_s[rows] = _solve(journey, steels, piece[rows], locking[rows])
     return reached_s
 
 
 def _piece_of_return(journey: Journey, steels: Steels, coil: Rows, locking: Floats) -> Rows:
     """The first piece at whose end g is reached, (n,); -1: none."""
-    pieces = journey.pieces
-    at_end = steels.take(pieces.coil)
-    end_s = exposures_s(journey, at_end.channel, np.arange(len(pieces.coil)), pieces.end_s)
-    end_locking = locking_exponent(end_s, at_end.tau_s, at_end.exponent)
-    count = np.diff(np.append(journey.first_piece, len(pieces.coil)))[coil]
+    of_piece = journey.pieces.coil
+    end_locking = locking_exponent(
+        journey.end_exposure_s, steels.tau_s[of_piece], steels.exponent[of_piece]
+    )
+    count = np.diff(np.append(journey.first_piece, len(of_piece)))[coil]
     found = np.full(len(coil), -1, dtype=np.intp)
     for step in range(int(count.max(initial=0)) - 1, -1, -1):
         piece = journey.first_piece[coil] + np.minimum(step, count - 1)
@@ -113,46 +88,49 @@ def _piece_of_return(journey: Journey, steels: Steels, coil: Rows, locking: Floa
 
 
 def _solve(journey: Journey, steels: Steels, piece: Rows, locking: Floats) -> Floats:
-    pieces = journey.pieces
-    low_s, high_s = pieces.start_s[piece].copy(), pieces.end_s[piece].copy()
-    power = 1.0 / steels.exponent[:, 0]
+    coil = journey.pieces.coil[piece]
+    low_s, high_s = journey.pieces.start_s[piece], journey.pieces.end_s[piece]
+    power = 1.0 / steels.exponent[coil, 0]
     goal = locking**power
-    guess_s = low_s + 0.5 * (high_s - low_s)
-    reached_s = low_s.copy()
-    open_rows = np.arange(len(piece))
+    begin = _straight(steels, coil, journey.start_exposure_s[piece]) ** power
+    end = _straight(steels, coil, journey.end_exposure_s[piece]) ** power
+    guess_s = low_s + (high_s - low_s) * np.clip((goal - begin) / (end - begin), 0.0, 1.0)
+    reached_s = guess_s.copy()
+    left = np.arange(len(piece))
     for _ in range(_MOST_STEPS):
-        here, at_s = steels.take(open_rows), guess_s[open_rows]
-        value, slope = _straightened(journey, here, piece[open_rows], at_s, power[open_rows])
-        excess = value - goal[open_rows]
+        value, slope = _straightened(journey, steels, piece[left], guess_s, power[left])
+        excess = value - goal[left]
         below = excess < 0
-        low_s[open_rows[below]] = at_s[below]
-        high_s[open_rows[~below]] = at_s[~below]
+        low_s = np.where(below, guess_s, low_s)
+        high_s = np.where(below, high_s, guess_s)
         with np.errstate(divide="ignore", invalid="ignore"):
-            step_s = at_s - excess / slope
-        low, high = low_s[open_rows], high_s[open_rows]
-        inside = (step_s >= low) & (step_s <= high)
-        next_s = np.where(inside, step_s, 0.5 * (low + high))
-        reached_s[open_rows] = next_s
-        guess_s[open_rows] = next_s
-        still = (np.abs(next_s - at_s) > _TIME_TOLERANCE_S) & (high - low > _TIME_TOLERANCE_S)
-        open_rows = open_rows[still]
-        if not len(open_rows):
+            step_s = guess_s - excess / slope
+        next_s = np.where((step_s >= low_s) & (step_s <= high_s), step_s, 0.5 * (low_s + high_s))
+        reached_s[left] = next_s
+        still = (np.abs(next_s - guess_s) > _TIME_TOLERANCE_S) & (high_s - low_s > _TIME_TOLERANCE_S)
+        left, guess_s, low_s, high_s = left[still], next_s[still], low_s[still], high_s[still]
+        if not len(left):
             break
     return reached_s
+
+
+def _straight(steels: Steels, coil: Rows, exposure_s: Floats) -> Floats:
+    return locking_exponent(exposure_s, steels.tau_s[coil], steels.exponent[coil])
 
 
 def _straightened(
     journey: Journey, steels: Steels, piece: Rows, at_s: Floats, power: Floats
 ) -> tuple[Floats, Floats]:
     """g^(1/m) with the first channel's m, and its slope in time, 1/s."""
-    exposure_s = exposures_s(journey, steels.channel, piece, at_s)
-    coil_k = journey.coil_k(piece, at_s)
-    ratio = exposure_s / steels.tau_s
-    term = ratio**steels.exponent
+    coil = journey.pieces.coil[piece]
+    coil_k, exposure_s = journey.at(piece, at_s)
+    ratio = exposure_s / steels.tau_s[coil]
+    exponent = steels.exponent[coil]
+    activation = np.array([*journey.field.activation_j_mol, 0.0])[journey.channel[coil]]
+    speed = rate(coil_k[:, None], activation) / steels.tau_s[coil]
+    term = ratio**exponent
     locking = term.sum(axis=1)
-    activation = np.array([*journey.field.activation_j_mol, 0.0])[steels.channel]
-    speed = rate(coil_k[:, None], activation) / steels.tau_s
     with np.errstate(divide="ignore", invalid="ignore"):
-        slope = np.where(ratio > 0, steels.exponent * term / ratio * speed, 0.0).sum(axis=1)
+        slope = np.where(ratio > 0, exponent * term / ratio * speed, 0.0).sum(axis=1)
         value = locking**power
         return value, power * value / locking * slope

@@ -58,9 +58,9 @@ def settled_temperature_k(curves: AirCurves, tau_s: Floats) -> Floats:
     settled_k = np.empty((*curves.air_k.T.shape, len(tau_s)))
     settled_k[0] = curves.air_k[:, :1]
     step_s = np.diff(curves.knot_s, axis=1)
-    decay, share = _step_weights(step_s[:, 0], tau_s)
+    changed = np.append(True, np.any(step_s[:, 1:] != step_s[:, :-1], axis=0))
     for knot in range(step_s.shape[1]):
-        if knot and not np.array_equal(step_s[:, knot], step_s[:, knot - 1]):
+        if changed[knot]:
             decay, share = _step_weights(step_s[:, knot], tau_s)
         air_k, next_air_k = curves.air_k[:, knot, None], curves.air_k[:, knot + 1, None]
         settled_k[knot + 1] = next_air_k + (settled_k[knot] - air_k) * decay - (next_air_k - air_k) * share
@@ -71,13 +71,3 @@ def _step_weights(step_s: Floats, tau_s: Floats) -> tuple[Floats, Floats]:
     """exp(−h/τ) and τ(1 − exp(−h/τ))/h, (n_locations, n_classes)."""
     ratio = step_s[:, None] / tau_s
     return np.exp(-ratio), -np.expm1(-ratio) / ratio
-
-
-def relaxed_k(
-    start_k: Floats, air_k: Floats, slope_k_s: Floats, elapsed_s: Floats, tau_s: Floats
-) -> Floats:
-    """Coil temperature `elapsed_s` after it was `start_k` in air of `air_k` rising by `slope_k_s`, elementwise."""
-    lead_k = slope_k_s * tau_s
-    return np.asarray(
-        air_k + slope_k_s * elapsed_s - lead_k + (start_k - air_k + lead_k) * np.exp(-elapsed_s / tau_s)
-    )

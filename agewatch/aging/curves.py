@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,6 +11,7 @@ from scipy.special import exp1
 from agewatch.aging.kinetics import GAS_CONSTANT, REFERENCE_K, Floats, rate
 
 _NODES, _WEIGHTS = np.polynomial.legendre.leggauss(5)
+_BUCKETS_PER_KNOT = 2
 _STEEP = 0.5
 """Change of Q/RT over a piece from which the closed form is used; below it five nodes are exact to 1e-11."""
 
@@ -29,16 +30,35 @@ class AirCurves:
     """(n_locations, n_knots), kelvin."""
     estimated: NDArray[np.bool_]
     """(n_locations, n_knots): the piece that begins here does not rest on readings."""
+    guide: NDArray[np.intp] = field(init=False, repr=False)
+    """(n_locations, n_buckets): the piece in which each bucket of time begins."""
+
+    def __post_init__(self) -> None:
+        n_locations, n_knots = self.knot_s.shape
+        begin_s, bucket_s = self._buckets()
+        edge_s = begin_s + bucket_s * np.arange(_BUCKETS_PER_KNOT * n_knots + 1)
+        guide = np.stack([np.searchsorted(row, edge_s, side="right") for row in self.knot_s]) - 1
+        object.__setattr__(self, "guide", np.clip(guide, 0, n_knots - 2))
+
+    def _buckets(self) -> tuple[float, float]:
+        begin_s = float(self.knot_s[:, 0].min())
+        return begin_s, (float(self.knot_s.max()) - begin_s) / (_BUCKETS_PER_KNOT * self.knot_s.shape[1])
 
     def locate(self, location: NDArray[np.intp], at_s: Floats) -> NDArray[np.intp]:
-        """Knot that begins the piece in which `at_s` lies, (n,); times outside take the first or last piece."""
-        span_s = float(self.knot_s.max() - self.knot_s.min()) + 1.0
-        origin_s = float(self.knot_s.min())
-        n_knots = self.knot_s.shape[1]
-        keys = (self.knot_s - origin_s + span_s * np.arange(len(self.knot_s))[:, None]).ravel()
-        inside_s = np.clip(at_s - origin_s, 0.0, span_s - 1.0)
-        found = np.searchsorted(keys, inside_s + span_s * location, side="right") - 1 - location * n_knots
-        return np.clip(found, 0, n_knots - 2)
+        """Knot that begins the piece in which `at_s` lies, in the shape of `at_s`, with which `location` broadcasts.
+
+        Times outside take the first or the last piece.
+        """
+        begin_s, bucket_s = self._buckets()
+        n_buckets, n_knots = self.guide.shape[1], self.knot_s.shape[1]
+        bucket = np.clip((at_s - begin_s) / bucket_s, 0, n_buckets - 1).astype(np.intp)
+        piece = self.guide.reshape(-1).take(location * n_buckets + bucket)
+        flat_s, base = self.knot_s.reshape(-1), location * n_knots + 1
+        while True:
+            passed = (flat_s.take(base + piece) <= at_s) & (piece < n_knots - 2)
+            if not passed.any():
+                return piece
+            piece += passed
 
     def at(self, location: NDArray[np.intp], at_s: Floats) -> Floats:
         """Air temperature, K, (n,)."""

@@ -60,9 +60,9 @@ def rate(temperature_k: Floats | float, activation_j_mol: Floats | float) -> Flo
     return np.asarray(REFERENCE_K / temperature_k * np.exp(exponent))
 
 
-def rate_slope(temperature_k: Floats, activation_j_mol: float) -> Floats:
+def rate_slope(temperature_k: Floats, activation_j_mol: Floats | float) -> Floats:
     """d ln(rate)/dT in 1/K at `temperature_k`, elementwise."""
-    return (activation_j_mol / GAS_CONSTANT / temperature_k - 1.0) / temperature_k
+    return np.asarray((activation_j_mol / GAS_CONSTANT / temperature_k - 1.0) / temperature_k)
 
 
 def hundy_activation_j_mol(slope_k: float) -> float:

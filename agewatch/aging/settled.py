@@ -19,39 +19,37 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from agewatch.aging.coil_heat import relaxed_k, settled_temperature_k
+from agewatch.aging.coil_heat import settled_temperature_k
 from agewatch.aging.curves import AirCurves
 from agewatch.aging.kinetics import GAS_CONSTANT, Floats, rate, rate_slope
 
 Rows = NDArray[np.intp]
 
-SERIES_TERMS = 5
-SERIES_LIMIT_K = 5.0
-"""Largest excess for which the series serves: its error is then below 1e-3 of what the excess adds."""
+SERIES_TERMS = 7
+SERIES_LIMIT_K = 8.0
+"""Largest excess for which the series serves: its error is then below 1e-4 of what the excess adds."""
+_UNFELT_K = 1e-4
+"""An excess below this adds less than a second."""
 _CLASS_STEP = 0.2
 """Distance of neighbouring classes in ln τ."""
 _STENCIL = 4
 
 
 @dataclass(frozen=True, slots=True)
-class ClassWeights:
-    """Where coils stand between the classes: first class of the stencil (n,) and its weights (n, 4)."""
+class Standing:
+    """Coils at their locations, (n,): what a field needs to know of them."""
 
+    location: Rows
+    tau_s: Floats
     first: Rows
+    """First class of time constant of the coil's stencil."""
     weight: Floats
+    """Of the four classes from `first` on, (n, 4)."""
 
-    def take(self, rows: Rows) -> ClassWeights:
-        return ClassWeights(self.first[rows], self.weight[rows])
-
-
-@dataclass(frozen=True, slots=True)
-class Moment:
-    """Coils at one time each, (n,)."""
-
-    coil_k: Floats
-    exposure_s: Floats
-    """Gathered since the curve began by a settled coil, less what the excess has still to add: its
-    difference between two times of one leg is the equivalent age gathered between them."""
+    def take(self, rows: Rows) -> Standing:
+        return Standing(
+            self.location.take(rows), self.tau_s.take(rows), self.first.take(rows), self.weight.take(rows, axis=0)
+        )
 
 
 @dataclass(frozen=True, slots=True)
@@ -62,140 +60,178 @@ class SettledField:
     activation_j_mol: tuple[float, ...]
     class_tau_s: Floats
     settled_k: Floats
-    """(n_knots, n_locations, n_classes)."""
-    exposure_s: tuple[Floats, ...]
-    """Per activation energy, shape of `settled_k`."""
-    estimated_s: tuple[Floats, ...]
-    """The part of `exposure_s` that rests on estimated air; empty when none is estimated."""
-    series: tuple[NDArray[np.float32], ...]
-    """Per activation energy, (n_knots, n_locations, n_classes, SERIES_TERMS), s/K^k."""
+    """U at the knots, (n_knots, n_locations, n_classes)."""
+    exposure_s: Floats
+    """∫ rate(U) up to each knot, (n_activations, n_knots, n_locations, n_classes)."""
+    estimated_s: Floats | None
+    """The part of `exposure_s` that rests on estimated air; None: none is."""
+    series: NDArray[np.float32]
+    """H_k at the knots, (n_activations, n_knots, n_locations, n_classes, SERIES_TERMS), s/K^k."""
 
     @classmethod
     def of(cls, curves: AirCurves, activation_j_mol: tuple[float, ...], tau_s: Floats) -> SettledField:
         """Sum the curves once for coils whose time constants lie within those of `tau_s` (s, > 0)."""
         class_tau_s = tau_classes_s(tau_s)
         settled_k = settled_temperature_k(curves, class_tau_s)
-        pieces = [_piece_exposure_s(curves, settled_k, class_tau_s, q) for q in activation_j_mol]
+        pieces_s = [_piece_exposure_s(curves, settled_k, class_tau_s, q) for q in activation_j_mol]
         estimated = curves.estimated.T[:-1, :, None]
         return cls(
             curves,
             activation_j_mol,
             class_tau_s,
             settled_k,
-            tuple(_from_zero(piece) for piece in pieces),
-            tuple(_from_zero(piece * estimated) for piece in pieces) if estimated.any() else (),
-            tuple(_excess_series(curves, settled_k, class_tau_s, q) for q in activation_j_mol),
+            _summed(pieces_s),
+            _summed([piece_s * estimated for piece_s in pieces_s]) if estimated.any() else None,
+            np.stack([_excess_series(curves, settled_k, class_tau_s, q) for q in activation_j_mol]),
         )
 
-    def weights(self, tau_s: Floats) -> ClassWeights:
-        """Cubic Lagrange weights in ln τ; `tau_s` within the classes."""
+    def standing(self, location: Rows, tau_s: Floats) -> Standing:
+        """Place coils between the classes: cubic Lagrange weights in ln τ."""
         nodes = np.log(self.class_tau_s)
         place = (np.log(tau_s) - nodes[0]) / (nodes[1] - nodes[0])
         first = np.clip(np.floor(place).astype(np.intp) - 1, 0, len(nodes) - _STENCIL)
         u = place - first
-        weight = np.stack(
-            [
-                (1 - u) * (2 - u) * (3 - u) / 6,
-                u * (2 - u) * (3 - u) / 2,
-                -u * (1 - u) * (3 - u) / 2,
-                u * (1 - u) * (2 - u) / 6,
-            ],
-            axis=-1,
+        weights = (
+            (1 - u) * (2 - u) * (3 - u) / 6,
+            u * (2 - u) * (3 - u) / 2,
+            -u * (1 - u) * (3 - u) / 2,
+            u * (1 - u) * (2 - u) / 6,
         )
-        return ClassWeights(first, weight)
+        return Standing(location, tau_s, first, np.stack(weights, axis=-1))
 
-    def settled_at_k(self, location: Rows, at_s: Floats, tau_s: Floats, classes: ClassWeights) -> Floats:
+    def settled_at_k(self, standing: Standing, at_s: Floats) -> Floats:
         """U at `at_s`, K, (n,)."""
-        knot = self.curves.locate(location, at_s)
-        return self._settled_in_piece(location, knot, at_s, tau_s, classes)[2]
+        return self._place(standing, at_s).settled_k
+
+    def settled_k_and_slope(self, standing: Standing, at_s: Floats) -> tuple[Floats, Floats]:
+        """U (K) and dU/dt (K/s) at m times of each coil, (n, m)."""
+        place = self._place(standing, at_s)
+        return place.settled_k, place.slope
 
     def moment(
-        self,
-        channel: int,
-        location: Rows,
-        at_s: Floats,
-        tau_s: Floats,
-        classes: ClassWeights,
-        excess_k: Floats,
-    ) -> Moment:
-        """State at `at_s` of coils with `excess_k` over the settled temperature (within SERIES_LIMIT_K).
+        self, channel: Rows, standing: Standing, at_s: Floats, excess_k: Floats
+    ) -> tuple[Floats, Floats]:
+        """Coil temperature (K), and equivalent age since the curve began (s), at `at_s`.
+
+        The second counts what a settled coil has gathered, less what the excess has still to add: its
+        difference between two times of one stay is the equivalent age gathered between them.
 
         Parameters
         ----------
         channel
-            Place in `activation_j_mol`.
-        location, at_s, tau_s, excess_k
-            (n,).
+            Places in `activation_j_mol`, (n, n_channels); -1: no such channel, for which the age is zero.
+        at_s, excess_k
+            (n,); the excess over the settled temperature at that time, within SERIES_LIMIT_K.
         """
-        activation = self.activation_j_mol[channel]
-        knot = self.curves.locate(location, at_s)
-        row = knot * self.curves.air_k.shape[0] + location
-        begin_k, begin_slope, settled_k, slope = self._settled_in_piece(location, knot, at_s, tau_s, classes)
-        elapsed_s = np.clip(at_s - self.curves.knot_s[location, knot], 0.0, None)
-        partial_s = _corrected_trapezoid_s(begin_k, settled_k, begin_slope, slope, elapsed_s, activation)
-        exposure_s = _between_classes(self.exposure_s[channel], row, classes) + partial_s
-        exposure_s = exposure_s - self._still_to_add_s(channel, location, knot, row, at_s, classes, excess_k)
-        return Moment(settled_k + excess_k, exposure_s)
+        place = self._place(standing, at_s)
+        exposure_s = np.zeros(channel.shape)
+        for slot in range(channel.shape[1]):
+            rows = np.flatnonzero(channel[:, slot] >= 0)
+            everyone = len(rows) == len(channel)
+            which = channel[:, slot] if everyone else channel[rows, slot]
+            here = place if everyone else place.take(rows)
+            exposure_s[rows, slot] = self._settled_exposure_s(which, here) - self._still_to_add_s(
+                which, here, excess_k if everyone else excess_k[rows]
+            )
+        return place.settled_k + excess_k, exposure_s
 
-    def estimated_at_s(self, channel: int, location: Rows, at_s: Floats, classes: ClassWeights) -> Floats:
-        """The part of a settled coil's exposure up to `at_s` that rests on estimated air, s, (n,)."""
-        if not self.estimated_s:
-            return np.zeros(len(at_s))
-        knot, share = self._place(location, at_s)
-        row = knot * self.curves.air_k.shape[0] + location
-        begin = _between_classes(self.estimated_s[channel], row, classes)
-        end = _between_classes(self.estimated_s[channel], row + self.curves.air_k.shape[0], classes)
-        return begin + (end - begin) * share
+    def estimated_at_s(self, channel: Rows, standing: Standing, at_s: Floats) -> tuple[Floats, Floats]:
+        """What a settled coil has gathered up to `at_s` on estimated air, and in all, s, (n,); `channel` (n,)."""
+        place = self._place(standing, at_s)
+        total_s = self._settled_exposure_s(channel, place)
+        if self.estimated_s is None:
+            return np.zeros(len(at_s)), total_s
+        row = (channel * len(self.settled_k) + place.knot) * len(self.curves.air_k) + standing.location
+        begin_s = _between_classes(self.estimated_s, row, standing)
+        end_s = _between_classes(self.estimated_s, row + len(self.curves.air_k), standing)
+        return begin_s + (end_s - begin_s) * place.share, total_s
 
-    def _place(self, location: Rows, at_s: Floats) -> tuple[Rows, Floats]:
-        knot = self.curves.locate(location, at_s)
-        begin_s, end_s = self.curves.knot_s[location, knot], self.curves.knot_s[location, knot + 1]
-        return knot, np.clip((at_s - begin_s) / (end_s - begin_s), 0.0, 1.0)
+    def _place(self, standing: Standing, at_s: Floats) -> _Place:
+        """Where times lie on the curves, and the settled temperature there.
 
-    def _settled_in_piece(
-        self, location: Rows, knot: Rows, at_s: Floats, tau_s: Floats, classes: ClassWeights
-    ) -> tuple[Floats, Floats, Floats, Floats]:
-        """U and dU/dt where the piece begins and at `at_s`."""
+        On a piece, the settled temperature is that at its first knot, relaxed towards the straight line of the
+        air with the coil's own time constant.
+        """
         curves = self.curves
-        begin_s, begin_air_k = curves.knot_s[location, knot], curves.air_k[location, knot]
-        air_slope = (curves.air_k[location, knot + 1] - begin_air_k) / (
-            curves.knot_s[location, knot + 1] - begin_s
+        shape = (-1,) + (1,) * (at_s.ndim - 1)
+        location, tau_s = standing.location.reshape(shape), standing.tau_s.reshape(shape)
+        knot = curves.locate(location, at_s)
+        at = location * curves.knot_s.shape[1] + knot
+        knot_s, air_k = curves.knot_s.reshape(-1), curves.air_k.reshape(-1)
+        begin_s, begin_air_k = knot_s.take(at), air_k.take(at)
+        step_s = knot_s.take(at + 1) - begin_s
+        air_slope = (air_k.take(at + 1) - begin_air_k) / step_s
+        elapsed_s = np.clip(at_s - begin_s, 0.0, step_s)
+        begin_k = _between_classes(self.settled_k, knot * len(curves.air_k) + location, standing)
+        lead_k = air_slope * tau_s
+        air_now_k = begin_air_k + air_slope * elapsed_s
+        settled_k = air_now_k - lead_k + (begin_k - begin_air_k + lead_k) * np.exp(-elapsed_s / tau_s)
+        return _Place(
+            standing,
+            knot,
+            elapsed_s,
+            elapsed_s / step_s,
+            begin_k,
+            settled_k,
+            (begin_air_k - begin_k) / tau_s,
+            (air_now_k - settled_k) / tau_s,
         )
-        begin_k = _between_classes(self.settled_k, knot * curves.air_k.shape[0] + location, classes)
-        elapsed_s = np.clip(at_s - begin_s, 0.0, None)
-        settled_k = relaxed_k(begin_k, begin_air_k, air_slope, elapsed_s, tau_s)
-        begin_slope = (begin_air_k - begin_k) / tau_s
-        slope = (begin_air_k + air_slope * elapsed_s - settled_k) / tau_s
-        return begin_k, begin_slope, settled_k, slope
 
-    def _still_to_add_s(
-        self,
-        channel: int,
-        location: Rows,
-        knot: Rows,
-        row: Rows,
-        at_s: Floats,
-        classes: ClassWeights,
-        excess_k: Floats,
-    ) -> Floats:
-        """What the excess adds from `at_s` on, s: H_k by a straight line between knots."""
-        to_add_s = np.zeros(len(at_s))
-        felt = np.flatnonzero(np.abs(excess_k) > 1e-5)
+    def _settled_exposure_s(self, channel: Rows, place: _Place) -> Floats:
+        row = (channel * len(self.settled_k) + place.knot) * len(self.curves.air_k) + place.standing.location
+        since_knot_s = path_exposure_s(
+            np.stack([place.begin_k, place.settled_k], axis=-1),
+            np.stack([place.begin_slope, place.slope], axis=-1),
+            np.stack([np.zeros_like(place.elapsed_s), place.elapsed_s], axis=-1),
+            np.array(self.activation_j_mol)[channel][:, None],
+        )
+        return _between_classes(self.exposure_s, row, place.standing) + since_knot_s
+
+    def _still_to_add_s(self, channel: Rows, place: _Place, excess_k: Floats) -> Floats:
+        """What an excess adds from here on, s: H_k by a straight line between knots."""
+        to_add_s = np.zeros(len(excess_k))
+        felt = np.flatnonzero(np.abs(excess_k) > _UNFELT_K)
         if not len(felt):
             return to_add_s
-        location, knot, row, classes = location[felt], knot[felt], row[felt], classes.take(felt)
-        begin_s, end_s = self.curves.knot_s[location, knot], self.curves.knot_s[location, knot + 1]
-        share = np.clip((at_s[felt] - begin_s) / (end_s - begin_s), 0.0, 1.0)
-        table = self.series[channel].reshape(-1, SERIES_TERMS)
-        base = row * len(self.class_tau_s) + classes.first
-        step = self.curves.air_k.shape[0] * len(self.class_tau_s)
+        place, channel = place.take(felt), channel[felt]
+        table = self.series.reshape(-1, SERIES_TERMS)
+        n_locations, n_classes = self.settled_k.shape[1:]
+        row = (channel * len(self.settled_k) + place.knot) * n_locations + place.standing.location
+        base = row * n_classes + place.standing.first
+        share = place.share[:, None]
         terms = np.zeros((len(felt), SERIES_TERMS))
         for k in range(_STENCIL):
-            weight = classes.weight[:, k, None]
-            terms += weight * ((1 - share)[:, None] * table[base + k] + share[:, None] * table[base + step + k])
-        power = excess_k[felt, None] ** np.arange(1, SERIES_TERMS + 1)
-        to_add_s[felt] = np.sum(terms * power, axis=1)
+            begin, end = table.take(base + k, axis=0), table.take(base + n_locations * n_classes + k, axis=0)
+            terms += place.standing.weight[:, k, None] * (begin + share * (end - begin))
+        excess_k = excess_k[felt]
+        to_add_s[felt] = _polynomial(terms, excess_k)
         return to_add_s
+
+
+@dataclass(frozen=True, slots=True)
+class _Place:
+    """Times on the curves: the piece, how far into it, and U with its slope at both ends of that way."""
+
+    standing: Standing
+    knot: Rows
+    elapsed_s: Floats
+    share: Floats
+    begin_k: Floats
+    settled_k: Floats
+    begin_slope: Floats
+    slope: Floats
+
+    def take(self, rows: Rows) -> _Place:
+        return _Place(
+            self.standing.take(rows),
+            self.knot[rows],
+            self.elapsed_s[rows],
+            self.share[rows],
+            self.begin_k[rows],
+            self.settled_k[rows],
+            self.begin_slope[rows],
+            self.slope[rows],
+        )
 
 
 def tau_classes_s(tau_s: Floats) -> Floats:
@@ -206,37 +242,61 @@ def tau_classes_s(tau_s: Floats) -> Floats:
     return np.asarray(np.exp(low + spread * np.arange(count) / (count - 1)))
 
 
-def _between_classes(values: Floats, row: Rows, classes: ClassWeights) -> Floats:
-    """`values` (n_knots, n_locations, n_classes) at flat (knot, location) rows, between classes."""
-    flat = values.reshape(-1)
-    base = row * values.shape[-1] + classes.first
-    total = classes.weight[:, 0] * flat[base]
-    for k in range(1, _STENCIL):
-        total += classes.weight[:, k] * flat[base + k]
+def _polynomial(terms: Floats, excess_k: Floats) -> Floats:
+    """Σ d^k terms_k, k = 1 …, by Horner's rule, (n,)."""
+    total = terms[:, -1] * excess_k
+    for k in range(terms.shape[1] - 2, -1, -1):
+        total = (total + terms[:, k]) * excess_k
     return np.asarray(total)
 
 
-def _from_zero(piece_s: Floats) -> Floats:
-    total_s = np.zeros((len(piece_s) + 1, *piece_s.shape[1:]))
-    np.cumsum(piece_s, axis=0, out=total_s[1:])
+def _between_classes(values: Floats, row: Rows, standing: Standing) -> Floats:
+    """`values` (…, n_classes) at flat rows (n,) or (n, m), between the classes of each coil."""
+    flat = values.reshape(-1)
+    shape = (-1,) + (1,) * (row.ndim - 1)
+    base = row * values.shape[-1] + standing.first.reshape(shape)
+    total = standing.weight[:, 0].reshape(shape) * flat.take(base)
+    for k in range(1, _STENCIL):
+        total += standing.weight[:, k].reshape(shape) * flat.take(base + k)
+    return np.asarray(total)
+
+
+def _summed(pieces_s: list[Floats]) -> Floats:
+    """Running sums from zero over the knots, (n_activations, n_knots, …)."""
+    total_s = np.zeros((len(pieces_s), len(pieces_s[0]) + 1, *pieces_s[0].shape[1:]))
+    for place, piece_s in enumerate(pieces_s):
+        np.cumsum(piece_s, axis=0, out=total_s[place, 1:])
     return total_s
 
 
-def _corrected_trapezoid_s(
-    begin_k: Floats, end_k: Floats, begin_slope: Floats, end_slope: Floats, step_s: Floats, activation: float
+def path_exposure_s(
+    temperature_k: Floats, slope_k_s: Floats, at_s: Floats, activation_j_mol: Floats
 ) -> Floats:
-    """∫ rate over a step from the ends' values and slopes (Euler–Maclaurin): error of fifth order in the step."""
-    begin, end = rate(begin_k, activation), rate(end_k, activation)
-    begin_rise = begin * rate_slope(begin_k, activation) * begin_slope
-    end_rise = end * rate_slope(end_k, activation) * end_slope
-    return np.asarray(step_s * (0.5 * (begin + end) + step_s / 12.0 * (begin_rise - end_rise)))
+    """∫ rate along paths given by temperatures and slopes at nodes of the last axis, s.
+
+    Notes
+    -----
+    The trapezoidal rule with the end correction of Euler and Maclaurin: its error is of fifth order in the step.
+    """
+    speed = rate(temperature_k, activation_j_mol)
+    gain = speed * rate_slope(temperature_k, activation_j_mol) * slope_k_s
+    return np.asarray(np.sum(_corrected_steps_s(speed, gain, np.diff(at_s, axis=-1)), axis=-1))
+
+
+def _corrected_steps_s(speed: Floats, gain: Floats, step_s: Floats) -> Floats:
+    """∫ rate over each step of the last axis from its values and time derivatives at the nodes."""
+    return np.asarray(
+        step_s
+        * (0.5 * (speed[..., 1:] + speed[..., :-1]) + step_s / 12.0 * (gain[..., :-1] - gain[..., 1:]))
+    )
 
 
 def _piece_exposure_s(curves: AirCurves, settled_k: Floats, tau_s: Floats, activation: float) -> Floats:
     """Exposure of settled coils over each piece, (n_knots − 1, n_locations, n_classes)."""
-    step_s = np.diff(curves.knot_s, axis=1).T[:, :, None]
-    slope = (curves.air_k.T[:, :, None] - settled_k) / tau_s
-    return _corrected_trapezoid_s(settled_k[:-1], settled_k[1:], slope[:-1], slope[1:], step_s, activation)
+    speed = rate(settled_k, activation)
+    gain = speed * rate_slope(settled_k, activation) * (curves.air_k.T[:, :, None] - settled_k) / tau_s
+    steps_s = _corrected_steps_s(speed.T, gain.T, np.diff(curves.knot_s, axis=1)[None])
+    return steps_s.T
 
 
 def _excess_series(
@@ -251,8 +311,9 @@ def _excess_series(
     series[-1] = running
     step_s = np.diff(curves.knot_s, axis=1)
     weights = None
+    changed = np.append(np.any(step_s[:, 1:] != step_s[:, :-1], axis=0), True)
     for knot in range(step_s.shape[1] - 1, -1, -1):
-        if weights is None or not np.array_equal(step_s[:, knot], step_s[:, knot + 1]):
+        if changed[knot]:
             weights = _decaying_weights(step_s[:, knot, None, None], decay_per_s)
         at_begin, at_end, decay = weights
         running = at_begin * density[knot] + at_end * density[knot + 1] + decay * running

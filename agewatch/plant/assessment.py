@@ -57,6 +57,8 @@ class Assessment:
     reason: Coded
     """One sentence for the verdict."""
     estimated_fraction: Floats
+    assumed: Coded
+    """The values that the certificate lacks, for which the grade or the default coil stands in; code -1: none."""
     starting_point: NDArray[np.bool_]
     """The grade's numbers are not fitted to this plant's own tests."""
 

@@ -6,7 +6,7 @@ Times are seconds since 1970 in UTC. A number that was not given is NaN, a name 
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
 import numpy as np
 from numpy.typing import NDArray
@@ -38,6 +38,9 @@ class Coded:
     def names(self) -> NDArray[np.object_]:
         """Every row's name (None where there is none)."""
         return np.array([*self.labels, None], dtype=object)[self.codes]
+
+    def take(self, rows: NDArray[np.intp] | NDArray[np.bool_]) -> Coded:
+        return Coded(self.codes[rows], self.labels)
 
     def recode(self, labels: tuple[str, ...]) -> Codes:
         """Codes into another list of labels; names that it lacks become -1."""
@@ -82,6 +85,20 @@ class Inventory:
 
     def __len__(self) -> int:
         return len(self.coil_id)
+
+    def take(self, rows: NDArray[np.intp]) -> Inventory:
+        """The inventory of some coils, `rows` rising."""
+        place = np.full(len(self), -1, dtype=np.int32)
+        place[rows] = np.arange(len(rows), dtype=np.int32)
+        moves = place[self.move_coil] >= 0
+        columns = {}
+        for field in fields(self):
+            column = getattr(self, field.name)
+            if field.name == "move_coil":
+                column = place[column]
+            chosen = moves if field.name.startswith("move_") else rows
+            columns[field.name] = column.take(chosen) if isinstance(column, Coded) else column[chosen]
+        return Inventory(**columns)
 
 
 @dataclass(frozen=True, slots=True)
