@@ -108,7 +108,7 @@ def coil_conditions(
 
 
 def _rows(coil_id: Names, wanted: set[str]) -> dict[str, int]:
-    """Row of each wanted coil that is there: by bisection, as coils are ordered; a scan for what it misses."""
+    """Row of each wanted coil that is there: by bisection, as coils are ordered; what it misses by scan."""
     coils = np.array(sorted(wanted), dtype=object)
     near = np.searchsorted(coil_id[:-1], coils)
     found = coil_id[near] == coils if len(coil_id) else np.zeros(len(coils), dtype=bool)
@@ -145,8 +145,9 @@ def _as_told(coils: CoilColumns, told: _Told, rows: NDArray[np.intp]) -> Flags:
     """Where a settled alarm has told its place and pressing as they are: with its rank, all that it tells."""
     press_s, told_press_s = coils.press_s[rows], told.press_s[rows]
     same_press = (press_s == told_press_s) | (np.isnan(press_s) & np.isnan(told_press_s))
-    same_location = np.array(coils.location[rows] == told.location[rows], dtype=bool)
-    return told.settled[rows] & same_press & same_location
+    same: Flags = told.settled[rows] & same_press
+    same &= np.array(coils.location[rows] == told.location[rows], dtype=bool)
+    return same
 
 
 def _active(kind: AlarmKind, coils: CoilColumns, stands: Flags, at_s: float, pull_horizon_s: float) -> Flags:
