@@ -1,136 +1,185 @@
-"""The whole store at once: from journeys and steels to plateaus now and times of return."""
+"""The whole stock at once: each coil's state now, and when its plateau returns, with what certainty."""
 
 from __future__ import annotations
 
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
 from agewatch.aging.journey import Journey
-from agewatch.aging.kinetics import Floats, rate
-from agewatch.aging.locking import locked_fraction, locking_exponent, locking_for_fraction
+from agewatch.aging.kinetics import Floats
+from agewatch.aging.returning import return_s
+from agewatch.aging.risk import Needed, log_locking_levels, return_probability
 from agewatch.aging.settled import Rows
-from agewatch.aging.yielding import FlowCurve
+from agewatch.aging.steels import Spreads, Steels
 
-_TIME_TOLERANCE_S = 1.0
-_MOST_STEPS = 60
+PROBABILITIES = (0.1, 0.5, 0.9)
+_PASSES = 3
+"""Times that the noise, which depends on when a coil returns, is refined."""
 
 
 @dataclass(frozen=True, slots=True)
-class Steels:
-    """What each coil is made of; arrays (n_coils,) or (n_coils, n_channels)."""
+class Ahead:
+    """How surely the outlook is known: sd of the ln of what is gathered from now on, at some leads."""
 
-    channel: NDArray[np.intp]
-    """Place of each channel's activation energy in the field; -1: the grade has no such channel."""
-    tau_s: Floats
-    """inf where there is no channel, and for grades that do not age."""
-    exponent: Floats
-    saturation_mpa: Floats
-    masking_mpa: Floats
-    flow: FlowCurve
+    lead_s: Floats
+    """Rising from 0, (n_leads,)."""
+    spread: Floats
+    """(n_locations, n_leads)."""
 
-
-def yield_rise_mpa(steels: Steels, exposure_s: Floats) -> Floats:
-    """Δσ = Δσ_sat f, MPa, (n,)."""
-    locking = locking_exponent(exposure_s, steels.tau_s, steels.exponent)
-    return steels.saturation_mpa * locked_fraction(locking)
+    def at(self, location: Rows, lead_s: Floats) -> Floats:
+        """(n,); before now there is none."""
+        place = np.interp(lead_s, self.lead_s, np.arange(len(self.lead_s)))
+        low = np.minimum(place.astype(np.intp), len(self.lead_s) - 2)
+        share = place - low
+        begin, end = self.spread[location, low], self.spread[location, low + 1]
+        return np.where(lead_s > 0, begin + share * (end - begin), 0.0)
 
 
-def ype_pct(steels: Steels, rise_mpa: Floats) -> Floats:
-    """Plateau (%) for a rise of which the residual stress of temper rolling masks the first part, (n,)."""
-    return steels.flow.ype_pct(np.maximum(0.0, rise_mpa - steels.masking_mpa))
+@dataclass(frozen=True, slots=True)
+class Stock:
+    """Every coil on its journey, with what is known of its steel and of its weather."""
+
+    journey: Journey
+    raised: Journey | None
+    """The same journey with every activation energy raised by its spread; None: none has one."""
+    steels: Steels
+    spreads: Spreads
+    ahead: Ahead
+    limit_pct: Floats
+    """(n_coils,); NaN: the part bears any plateau."""
+    at_s: float
+    horizon_s: float
 
 
-def locking_to_return(steels: Steels, limit_pct: Floats) -> Floats:
-    """g at which the plateau reaches `limit_pct`, (n,); inf: never (NaN limit, or the rise saturates below)."""
-    needed_mpa = steels.flow.effective_rise_mpa(limit_pct) + steels.masking_mpa
-    return np.where(np.isnan(needed_mpa), np.inf, locking_for_fraction(needed_mpa / steels.saturation_mpa))
+@dataclass(frozen=True, slots=True)
+class Now:
+    """State of every coil at the time of the assessment, (n_coils,) or (n_coils, n_channels)."""
+
+    coil_k: Floats
+    exposure_s: Floats
+    rise_mpa: Floats
+    ype_pct: Floats
+    estimated_fraction: Floats
 
 
-def return_s(journey: Journey, steels: Steels, coil: Rows, locking: Floats) -> Floats:
-    """When coils reach a locking exponent, seconds, (n,); NaN: not before the horizon.
+def now(stock: Stock) -> Now:
+    """Where every coil stands."""
+    at_s = np.full(len(stock.limit_pct), stock.at_s)
+    coil_k, exposure_s = stock.journey.at(stock.journey.piece_of(np.arange(len(at_s)), at_s), at_s)
+    rise_mpa = stock.steels.rise_mpa(exposure_s)
+    return Now(
+        coil_k, exposure_s, rise_mpa, stock.steels.ype_pct(rise_mpa), stock.journey.estimated_fraction(at_s)
+    )
 
-    Parameters
-    ----------
-    steels
-        One row per coil of the journey.
-    coil
-        Rows into the coils of `journey`; a coil may stand in it several times, with different `locking`.
-    locking
-        g to reach, (n,).
+
+def return_quantiles_s(stock: Stock, state: Now) -> Floats:
+    """When each coil's plateau has returned with P10, P50 and P90, s, (3, n_coils); NaN: not by the horizon."""
+    count = len(stock.limit_pct)
+    coil = np.tile(np.arange(count), len(PROBABILITIES))
+    needed = _needed(stock)
+    noise, shift = _noise(stock, np.arange(count), np.full(count, stock.at_s), state.exposure_s)
+    noise, shift = np.tile(noise, len(PROBABILITIES)), np.tile(shift, len(PROBABILITIES))
+    level = _levels(needed, noise)
+    reached_s = return_s(stock.journey, stock.steels, coil, np.exp(level - shift))
+    for _ in range(_PASSES):
+        rows = np.flatnonzero(_noise_varies(stock)[coil])
+        if not len(rows):
+            break
+        at_s = np.where(np.isnan(reached_s[rows]), stock.horizon_s, reached_s[rows])
+        exposure_s = _exposure_at(stock.journey, coil[rows], at_s)
+        noise[rows], shift[rows] = _noise(stock, coil[rows], at_s, exposure_s)
+        level = _levels(needed, noise)
+        reached_s[rows] = return_s(
+            stock.journey, stock.steels, coil[rows], np.exp(level[rows] - shift[rows])
+        )
+    return reached_s.reshape(len(PROBABILITIES), count)
+
+
+def return_risk(stock: Stock, until_s: Floats) -> Floats:
+    """P(returned by `until_s`), (n_coils,); NaN times: NaN. Times past the horizon count as the horizon."""
+    risk = np.full(len(until_s), np.nan)
+    coil = np.flatnonzero(~np.isnan(until_s))
+    if not len(coil):
+        return risk
+    at_s = np.minimum(until_s[coil], stock.horizon_s)
+    exposure_s = _exposure_at(stock.journey, coil, at_s)
+    noise, shift = _noise(stock, coil, at_s, exposure_s)
+    with np.errstate(divide="ignore"):
+        log_locking = np.log(stock.steels.take(coil).locking(exposure_s)) + shift
+    risk[coil] = return_probability(_needed(stock).threshold().take(coil), log_locking, noise)
+    return risk
+
+
+def _needed(stock: Stock) -> Needed:
+    return Needed(
+        stock.steels.needed_mpa(stock.limit_pct),
+        stock.spreads.needed_mpa,
+        stock.steels.saturation_mpa,
+        stock.spreads.log_saturation,
+    )
+
+
+def _levels(needed: Needed, noise: Floats) -> Floats:
+    """ln g to reach for each of PROBABILITIES, one after another, (3 n_coils,)."""
+    return np.concatenate(
+        [
+            log_locking_levels(needed, part, probability)
+            for part, probability in zip(
+                np.split(noise, len(PROBABILITIES)), PROBABILITIES, strict=True
+            )
+        ]
+    )
+
+
+def _exposure_at(journey: Journey, coil: Rows, at_s: Floats) -> Floats:
+    return journey.at(journey.piece_of(coil, at_s), at_s)[1]
+
+
+def _noise_varies(stock: Stock) -> np.ndarray[tuple[int], np.dtype[np.bool_]]:
+    """Coils whose noise depends on when they return: several channels, uncertain weather or energies."""
+    several = (np.isfinite(stock.steels.tau_s).sum(axis=1) > 1) & (stock.spreads.log_tau > 0).any(axis=1)
+    weather = bool((stock.ahead.spread > 0).any())
+    ages = np.isfinite(stock.steels.tau_s).any(axis=1)
+    return np.asarray(ages & (several | weather | (stock.raised is not None)))
+
+
+def _noise(stock: Stock, coil: Rows, at_s: Floats, exposure_s: Floats) -> tuple[Floats, Floats]:
+    """Standard deviation of ln g at `at_s`, and how far its mean lies above the ln g of the medians, (n,).
 
     Notes
     -----
-    The piece in which g is reached is found from its values at the ends of pieces; inside it Newton's method
-    runs on ``g^(1/m)``, which for one channel is straight in equivalent age, kept inside a shrinking bracket.
+    With shares w of the channels in g: ``var = Σ (w m σ_τ)² + (Σ w m σ_ahead x_ahead/x)² + (Δ ln g)²``, the last by
+    raising the activation energies by their spread; the mean of a sum of lognormals gives
+    ``½ (Σ w v − Σ w² v)``, ``v = (m σ_τ)²``.
     """
-    reached_s = np.full(len(coil), np.nan)
-    piece = _piece_of_return(journey, steels, coil, locking)
-    rows = np.flatnonzero(piece >= 0)
-    if len(rows):
-        reached_s[rows] = _solve(journey, steels, piece[rows], locking[rows])
-    return reached_s
-
-
-def _piece_of_return(journey: Journey, steels: Steels, coil: Rows, locking: Floats) -> Rows:
-    """The first piece at whose end g is reached, (n,); -1: none."""
-    of_piece = journey.pieces.coil
-    end_locking = locking_exponent(
-        journey.end_exposure_s, steels.tau_s[of_piece], steels.exponent[of_piece]
-    )
-    count = np.diff(np.append(journey.first_piece, len(of_piece)))[coil]
-    found = np.full(len(coil), -1, dtype=np.intp)
-    for step in range(int(count.max(initial=0)) - 1, -1, -1):
-        piece = journey.first_piece[coil] + np.minimum(step, count - 1)
-        found = np.where(end_locking[piece] >= locking, piece, found)
-    return found
-
-
-def _solve(journey: Journey, steels: Steels, piece: Rows, locking: Floats) -> Floats:
-    coil = journey.pieces.coil[piece]
-    low_s, high_s = journey.pieces.start_s[piece], journey.pieces.end_s[piece]
-    power = 1.0 / steels.exponent[coil, 0]
-    goal = locking**power
-    begin = _straight(steels, coil, journey.start_exposure_s[piece]) ** power
-    end = _straight(steels, coil, journey.end_exposure_s[piece]) ** power
-    guess_s = low_s + (high_s - low_s) * np.clip((goal - begin) / (end - begin), 0.0, 1.0)
-    reached_s = guess_s.copy()
-    left = np.arange(len(piece))
-    for _ in range(_MOST_STEPS):
-        value, slope = _straightened(journey, steels, piece[left], guess_s, power[left])
-        excess = value - goal[left]
-        below = excess < 0
-        low_s = np.where(below, guess_s, low_s)
-        high_s = np.where(below, high_s, guess_s)
-        with np.errstate(divide="ignore", invalid="ignore"):
-            step_s = guess_s - excess / slope
-        next_s = np.where((step_s >= low_s) & (step_s <= high_s), step_s, 0.5 * (low_s + high_s))
-        reached_s[left] = next_s
-        still = (np.abs(next_s - guess_s) > _TIME_TOLERANCE_S) & (high_s - low_s > _TIME_TOLERANCE_S)
-        left, guess_s, low_s, high_s = left[still], next_s[still], low_s[still], high_s[still]
-        if not len(left):
-            break
-    return reached_s
-
-
-def _straight(steels: Steels, coil: Rows, exposure_s: Floats) -> Floats:
-    return locking_exponent(exposure_s, steels.tau_s[coil], steels.exponent[coil])
-
-
-def _straightened(
-    journey: Journey, steels: Steels, piece: Rows, at_s: Floats, power: Floats
-) -> tuple[Floats, Floats]:
-    """g^(1/m) with the first channel's m, and its slope in time, 1/s."""
-    coil = journey.pieces.coil[piece]
-    coil_k, exposure_s = journey.at(piece, at_s)
-    ratio = exposure_s / steels.tau_s[coil]
-    exponent = steels.exponent[coil]
-    activation = np.array([*journey.field.activation_j_mol, 0.0])[journey.channel[coil]]
-    speed = rate(coil_k[:, None], activation) / steels.tau_s[coil]
-    term = ratio**exponent
-    locking = term.sum(axis=1)
+    steels = stock.steels.take(coil)
     with np.errstate(divide="ignore", invalid="ignore"):
-        slope = np.where(ratio > 0, exponent * term / ratio * speed, 0.0).sum(axis=1)
-        value = locking**power
-        return value, power * value / locking * slope
+        terms = (exposure_s / steels.tau_s) ** steels.exponent
+        shares = terms / terms.sum(axis=1, keepdims=True)
+    shares = np.where(np.isnan(shares), np.eye(shares.shape[1])[0], shares)
+    of_tau = (steels.exponent * stock.spreads.log_tau[coil]) ** 2
+    variance = np.sum(shares**2 * of_tau, axis=1)
+    shift = 0.5 * (np.sum(shares * of_tau, axis=1) - variance)
+    weather = _weather_spread(stock, coil, at_s, exposure_s)
+    variance += np.sum(shares * steels.exponent * weather, axis=1) ** 2
+    if stock.raised is not None:
+        raised_s = _exposure_at(stock.raised, coil, at_s)
+        with np.errstate(divide="ignore", invalid="ignore"):
+            change = np.log(steels.locking(raised_s) / steels.locking(exposure_s))
+        variance += np.nan_to_num(change, nan=0.0, posinf=0.0, neginf=0.0) ** 2
+    return np.sqrt(variance), shift
+
+
+def _weather_spread(stock: Stock, coil: Rows, at_s: Floats, exposure_s: Floats) -> Floats:
+    """sd of ln of the equivalent age at `at_s` that the outlook brings, (n, n_channels)."""
+    lead_s = at_s - stock.at_s
+    if not (stock.ahead.spread > 0).any() or not (lead_s > 0).any():
+        return np.zeros_like(exposure_s)
+    now_s = np.full(len(coil), stock.at_s)
+    piece = stock.journey.piece_of(coil, now_s)
+    past_s = stock.journey.at(piece, now_s)[1]
+    with np.errstate(divide="ignore", invalid="ignore"):
+        ahead_share = np.clip(1.0 - past_s / exposure_s, 0.0, 1.0)
+    location = stock.journey.pieces.standing.location[piece]
+    return np.nan_to_num(ahead_share * stock.ahead.at(location, lead_s)[:, None], nan=0.0)

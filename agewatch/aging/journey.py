@@ -104,10 +104,14 @@ class Journey:
         origin_s = before_s[first_piece][pieces.coil]
         return cls(field, channel, pieces, first_piece, moment_s, before_s - origin_s, until_s - origin_s)
 
-    def piece_at(self, at_s: Floats) -> Rows:
-        """The piece that each coil is in at `at_s` (n_coils,); before its first, the first."""
-        started = self.pieces.start_s <= at_s[self.pieces.coil]
-        return self.first_piece + np.maximum(np.add.reduceat(started, self.first_piece) - 1, 0)
+    def piece_of(self, coil: Rows, at_s: Floats) -> Rows:
+        """The piece that some coils are in at `at_s`, (n,)."""
+        count = np.diff(np.append(self.first_piece, len(self.pieces.coil)))[coil]
+        piece = self.first_piece[coil]
+        for step in range(1, int(count.max(initial=1))):
+            later = self.first_piece[coil] + np.minimum(step, count - 1)
+            piece = np.where(self.pieces.start_s[later] <= at_s, later, piece)
+        return piece
 
     def at(self, piece: Rows, at_s: Floats) -> tuple[Floats, Floats]:
         """Coil temperature (K), (n,), and equivalent age (s at 20 °C), (n, n_channels), inside pieces."""

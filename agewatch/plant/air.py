@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from agewatch.aging.assess import Ahead
 from agewatch.aging.curves import AirCurves
 from agewatch.aging.kinetics import DAY_S, ZERO_C_K
 from agewatch.climate.location_curve import AirCurve, air_curve, middle_of_sensors
@@ -25,6 +26,7 @@ class PlantAir:
     """The location has readings; one that has none is taken to be as warm as the warmest that has, (n_locations,)."""
     last_reading_s: Floats
     """NaN where there is none, (n_locations,)."""
+    ahead: Ahead
     horizon_s: float
 
 
@@ -59,7 +61,8 @@ def plant_air(
     warmest = max(known, key=lambda curve: float(np.mean(curve.celsius)))
     stand_in = AirCurve(warmest.at_s, warmest.celsius, np.ones(len(warmest.at_s), dtype=np.bool_))
     filled = [stand_in if curve is None else curve for curve in curves]
-    return PlantAir(_padded(filled), ~np.isnan(last_s), np.array(last_s), horizon_s)
+    certain = Ahead(np.array([0.0, horizon_s - at_s]), np.zeros((len(filled), 2)))
+    return PlantAir(_padded(filled), ~np.isnan(last_s), np.array(last_s), certain, horizon_s)
 
 
 def _believed_sensors(

@@ -8,13 +8,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from agewatch.aging.assess import (
-    Steels,
-    locking_to_return,
-    return_s,
-    yield_rise_mpa,
-    ype_pct,
-)
+from agewatch.aging.assess import Stock, now, return_quantiles_s, return_risk
 from agewatch.aging.journey import Journey
 from agewatch.aging.kinetics import DAY_S, HOUR_S, ZERO_C_K
 from agewatch.aging.settled import Rows, SettledField
@@ -23,7 +17,13 @@ from agewatch.plant.assessment import Assessment, Verdict
 from agewatch.plant.inventory import Coded, Floats, Inventory, OutlookRows, Readings
 from agewatch.plant.journeys import coil_legs
 from agewatch.plant.settings import Settings
-from agewatch.plant.steels import activations_j_mol, assumed_values, coil_steels
+from agewatch.plant.steels import (
+    activations_j_mol,
+    assumed_values,
+    coil_channels,
+    coil_spreads,
+    coil_steels,
+)
 from agewatch.plant.verdicts import NO_PART, Facts, judge, unassessable
 
 MODEL = "agewatch-1"
@@ -32,21 +32,11 @@ MODEL = "agewatch-1"
 
 @dataclass(frozen=True, slots=True)
 class Prepared:
-    """Coils that can be assessed, with their steels, on their way through their legs."""
+    """Coils that can be assessed, on their journeys."""
 
     inventory: Inventory
-    journey: Journey
-    steels: Steels
-    limit_pct: Floats
-    """NaN: the part bears any plateau."""
+    stock: Stock
     pull_risk: Floats
-    at_s: float
-    horizon_s: float
-
-    def now(self) -> tuple[Rows, Floats]:
-        """The piece that each coil is in, and the time of the assessment for each coil."""
-        at_s = np.full(len(self.inventory), self.at_s)
-        return self.journey.piece_at(at_s), at_s
 
 
 def assess(
@@ -97,57 +87,61 @@ def prepare(inventory: Inventory, air: PlantAir, settings: Settings, at_s: float
     legs = coil_legs(inventory, settings, at_s)
     field = SettledField.of(air.curves, activations_j_mol(settings), legs.tau_s)
     grade = inventory.grade.recode(tuple(settings.grade)).astype(np.intp)
-    steels = coil_steels(inventory, settings, grade)
     parts = [*settings.part.values(), NO_PART]
     part = inventory.part.recode(tuple(settings.part))
-    limits = [np.nan if each.ype_limit_pct is None else each.ype_limit_pct for each in parts]
-    return Prepared(
-        inventory,
-        Journey.of(field, steels.channel, legs, inventory.coil_temp_c + ZERO_C_K, air.horizon_s),
+    limit_pct = np.array([np.nan if each.ype_limit_pct is None else each.ype_limit_pct for each in parts])[part]
+
+    def journey(channel: Rows) -> Journey:
+        return Journey.of(field, channel, legs, inventory.coil_temp_c + ZERO_C_K, air.horizon_s)
+
+    steels = coil_steels(inventory, settings, grade)
+    raised = coil_channels(settings, grade, raised=True)
+    stock = Stock(
+        journey(steels.channel),
+        None if np.array_equal(raised, steels.channel) else journey(raised),
         steels,
-        np.array(limits)[part],
-        np.array([each.pull_risk for each in parts])[part],
+        coil_spreads(inventory, settings, grade, limit_pct),
+        air.ahead,
+        limit_pct,
         at_s,
         air.horizon_s,
     )
+    return Prepared(inventory, stock, np.array([each.pull_risk for each in parts])[part])
 
 
 def _evaluate(ready: Prepared, settings: Settings) -> tuple[dict[str, NDArray[Any]], Coded]:
     """The columns of coils that can be assessed, and their reasons."""
-    steels, inventory, (piece, at_s) = ready.steels, ready.inventory, ready.now()
-    coil_k, exposure_s = ready.journey.at(piece, at_s)
-    rise_mpa = yield_rise_mpa(steels, exposure_s)
-    everyone = np.arange(len(inventory))
-    locking = locking_to_return(steels, ready.limit_pct)
-    returns_s = return_s(ready.journey, steels, everyone, locking)
-    risk = np.where(np.isnan(inventory.press_s), np.nan, returns_s < inventory.press_s)
+    stock, press_s = ready.stock, ready.inventory.press_s
+    state = now(stock)
+    p10_s, p50_s, p90_s = return_quantiles_s(stock, state)
+    risk = return_risk(stock, np.maximum(press_s, stock.at_s))
     facts = Facts(
-        at_s=ready.at_s,
-        horizon_s=ready.horizon_s,
+        at_s=stock.at_s,
+        horizon_s=stock.horizon_s,
         pull_horizon_s=settings.outlook.pull_horizon_days * DAY_S,
-        return_p10_s=returns_s,
-        return_p50_s=returns_s,
-        press_s=inventory.press_s,
+        return_p10_s=p10_s,
+        return_p50_s=p50_s,
+        press_s=press_s,
         return_risk=risk,
         pull_risk=ready.pull_risk,
-        limit_pct=ready.limit_pct,
-        lab_ype_pct=inventory.lab_ype_pct,
-        ages=np.isfinite(steels.tau_s).any(axis=1),
+        limit_pct=stock.limit_pct,
+        lab_ype_pct=ready.inventory.lab_ype_pct,
+        ages=np.isfinite(stock.steels.tau_s).any(axis=1),
     )
     verdict, reason = judge(facts)
     return {
-        "equivalent_age_days": exposure_s[:, 0] / DAY_S,
-        "coil_temp_c": coil_k - ZERO_C_K,
-        "yield_rise_mpa": rise_mpa,
-        "ype_pct": ype_pct(steels, rise_mpa),
-        "ype_limit_pct": ready.limit_pct,
-        "return_p10_s": returns_s,
-        "return_p50_s": returns_s,
-        "return_p90_s": returns_s,
+        "equivalent_age_days": state.exposure_s[:, 0] / DAY_S,
+        "coil_temp_c": state.coil_k - ZERO_C_K,
+        "yield_rise_mpa": state.rise_mpa,
+        "ype_pct": state.ype_pct,
+        "ype_limit_pct": stock.limit_pct,
+        "return_p10_s": p10_s,
+        "return_p50_s": p50_s,
+        "return_p90_s": p90_s,
         "return_risk": risk,
-        "slack_h": (returns_s - inventory.press_s) / HOUR_S,
+        "slack_h": (p10_s - press_s) / HOUR_S,
         "verdict": verdict,
-        "estimated_fraction": ready.journey.estimated_fraction(at_s),
+        "estimated_fraction": state.estimated_fraction,
     }, reason
 
 

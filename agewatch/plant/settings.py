@@ -156,8 +156,10 @@ class Grade(_Section):
     rm_mpa: Positive
     n_value: Annotated[float, Field(gt=0, lt=1)]
     temper_elongation_pct: NotNegative = 1.0
-    certificate_spread: NotNegative = 0.0
-    """Scatter of ln Rp0.2 where the certificate is silent."""
+    rp02_spread: NotNegative = 0.0
+    """Scatter within the grade, for coils whose certificate is silent."""
+    rm_spread: NotNegative = 0.0
+    n_spread: NotNegative = 0.0
     rise_saturation_mpa: Positive = 30.0
     rise_saturation_spread: NotNegative = 0.15
     masking_mpa: NotNegative = 0.0

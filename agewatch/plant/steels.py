@@ -4,14 +4,15 @@ from __future__ import annotations
 
 import numpy as np
 
-from agewatch.aging.assess import Steels
 from agewatch.aging.kinetics import DAY_S, Floats, harper_tau_s
 from agewatch.aging.settled import Rows
+from agewatch.aging.steels import Spreads, Steels
 from agewatch.aging.yielding import FlowCurve
 from agewatch.plant.inventory import Coded, Inventory
 from agewatch.plant.settings import Channel, Grade, Settings
 
 CERTIFICATE = ("rp02_mpa", "rm_mpa", "n_value")
+SPREADS = ("rp02_spread", "rm_spread", "n_spread")
 SIZE = ("mass_kg", "width_mm")
 _WORDS = {
     "rp02_mpa": "Rp0.2",
@@ -29,39 +30,85 @@ def channels(grade: Grade) -> dict[str, Channel]:
 
 
 def activations_j_mol(settings: Settings) -> tuple[float, ...]:
-    """The activation energies of all channels of all grades, each once."""
+    """The activation energies of all channels of all grades, as they are and raised by their spreads, each once."""
     energies = {
-        channel.activation_kj_mol * 1e3
+        (channel.activation_kj_mol + raised * channel.activation_spread_kj_mol) * 1e3
         for grade in settings.grade.values()
         for channel in channels(grade).values()
+        for raised in (0, 1)
     }
     return tuple(sorted(energies))
+
+
+def coil_channels(settings: Settings, grade: Rows, *, raised: bool = False) -> Rows:
+    """Places of each coil's channels in `activations_j_mol`, (n_coils, n_channels); -1: none."""
+    energies = activations_j_mol(settings)
+    grades = [channels(each) for each in settings.grade.values()]
+    channel = np.full((len(grades), max(len(each) for each in grades)), -1, dtype=np.intp)
+    for row, each in enumerate(grades):
+        for slot, own in enumerate(each.values()):
+            spread = own.activation_spread_kj_mol if raised else 0.0
+            channel[row, slot] = energies.index((own.activation_kj_mol + spread) * 1e3)
+    return channel[grade]
 
 
 def coil_steels(inventory: Inventory, settings: Settings, grade: Rows) -> Steels:
     """Steels of coils whose grades are rows of `settings.grade` (all ≥ 0); τ of one that does not age is inf."""
     grades = [*settings.grade.values()]
-    energies = activations_j_mol(settings)
-    slots = max(len(channels(each)) for each in grades)
-    channel = np.full((len(grades), slots), -1, dtype=np.intp)
-    exponent = np.ones((len(grades), slots))
-    tau_s = np.full((len(grade), slots), np.inf)
+    channel = coil_channels(settings, grade)
+    exponent = np.ones(channel.shape)
+    tau_s = np.full(channel.shape, np.inf)
     temper_pct = given_or_grade(inventory.temper_elongation_pct, grades, grade, "temper_elongation_pct")
     for row, each in enumerate(grades):
         of_grade = np.flatnonzero(grade == row)
-        for slot, (solute, own) in enumerate(channels(each).items()):
-            channel[row, slot] = energies.index(own.activation_kj_mol * 1e3)
-            exponent[row, slot] = own.exponent
-            if each.aging:
-                tau_s[of_grade, slot] = _tau_s(own, solute, temper_pct[of_grade])
+        for slot, (solute, own) in enumerate(channels(each).items() if each.aging else ()):
+            exponent[of_grade, slot] = own.exponent
+            tau_s[of_grade, slot] = _tau_s(own, solute, temper_pct[of_grade])
     return Steels(
-        channel[grade],
+        channel,
         tau_s,
-        exponent[grade],
+        exponent,
         np.array([each.rise_saturation_mpa for each in grades])[grade],
         np.array([each.masking_mpa for each in grades])[grade],
         FlowCurve.of_certificate(*_tensile_values(inventory, grades, grade)),
     )
+
+
+def coil_spreads(inventory: Inventory, settings: Settings, grade: Rows, limit_pct: Floats) -> Spreads:
+    """Spreads of coils whose parts bear `limit_pct` (n_coils,)."""
+    grades = [*settings.grade.values()]
+    slots = max(len(channels(each)) for each in grades)
+    log_tau = np.zeros((len(grades), slots))
+    for row, each in enumerate(grades):
+        own = [channel.tau_spread for channel in channels(each).values()] if each.aging else []
+        log_tau[row, : len(own)] = own
+    masking_mpa = np.array([each.masking_spread_mpa for each in grades])[grade]
+    return Spreads(
+        log_tau[grade],
+        np.hypot(masking_mpa, _assumed_spread_mpa(inventory, grades, grade, limit_pct)),
+        np.array([each.rise_saturation_spread for each in grades])[grade],
+    )
+
+
+def _assumed_spread_mpa(
+    inventory: Inventory, grades: list[Grade], grade: Rows, limit_pct: Floats
+) -> Floats:
+    """Spread of the rise that the limit needs, from the tensile values that the grade stands in for, MPa.
+
+    First order, about the grade's own values, so that coils with the same gaps share it.
+    """
+    medians = [np.array([getattr(each, name) for each in grades])[grade] for name in CERTIFICATE]
+    variance = np.zeros(len(grade))
+    for place, (name, spread) in enumerate(zip(CERTIFICATE, SPREADS, strict=True)):
+        silent = np.isnan(getattr(inventory, name))
+        by = np.array([getattr(each, spread) for each in grades])[grade] * silent
+        if by.any():
+            shifted = [value * np.exp(by) if at == place else value for at, value in enumerate(medians)]
+            needed = [
+                FlowCurve.of_certificate(*values).effective_rise_mpa(limit_pct) for values in (medians, shifted)
+            ]
+            variance += np.nan_to_num((needed[1] - needed[0]) ** 2, nan=0.0)
+    return np.sqrt(variance)
 
 
 def assumed_values(inventory: Inventory) -> Coded:

@@ -1,0 +1,102 @@
+"""Times of return: when a coil on its journey reaches the locking that its limit needs."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from agewatch.aging.journey import Journey
+from agewatch.aging.kinetics import Floats, rate
+from agewatch.aging.locking import locking_exponent
+from agewatch.aging.settled import Rows
+from agewatch.aging.steels import Steels
+
+_TIME_TOLERANCE_S = 1.0
+_MOST_STEPS = 60
+
+
+def return_s(journey: Journey, steels: Steels, coil: Rows, locking: Floats) -> Floats:
+    """When coils reach a locking exponent, seconds, (n,); NaN: not before the horizon.
+
+    Parameters
+    ----------
+    steels
+        One row per coil of the journey.
+    coil
+        Rows into the coils of `journey`; a coil may stand in it several times, with different `locking`.
+    locking
+        g to reach, (n,).
+
+    Notes
+    -----
+    The piece in which g is reached is found from its values at the ends of pieces; inside it Newton's method
+    runs on ``g^(1/m)``, which for one channel is straight in equivalent age, kept inside a shrinking bracket.
+    """
+    reached_s = np.full(len(coil), np.nan)
+    piece = _piece_of_return(journey, steels, coil, locking)
+    rows = np.flatnonzero(piece >= 0)
+    if len(rows):
+        reached_s[rows] = _solve(journey, steels, piece[rows], locking[rows])
+    return reached_s
+
+
+def _piece_of_return(journey: Journey, steels: Steels, coil: Rows, locking: Floats) -> Rows:
+    """The first piece at whose end g is reached, (n,); -1: none."""
+    of_piece = journey.pieces.coil
+    end_locking = locking_exponent(
+        journey.end_exposure_s, steels.tau_s[of_piece], steels.exponent[of_piece]
+    )
+    count = np.diff(np.append(journey.first_piece, len(of_piece)))[coil]
+    found = np.full(len(coil), -1, dtype=np.intp)
+    for step in range(int(count.max(initial=0)) - 1, -1, -1):
+        piece = journey.first_piece[coil] + np.minimum(step, count - 1)
+        found = np.where(end_locking[piece] >= locking, piece, found)
+    return found
+
+
+def _solve(journey: Journey, steels: Steels, piece: Rows, locking: Floats) -> Floats:
+    coil = journey.pieces.coil[piece]
+    low_s, high_s = journey.pieces.start_s[piece], journey.pieces.end_s[piece]
+    power = 1.0 / steels.exponent[coil, 0]
+    goal = locking**power
+    begin = _straight(steels, coil, journey.start_exposure_s[piece]) ** power
+    end = _straight(steels, coil, journey.end_exposure_s[piece]) ** power
+    guess_s = low_s + (high_s - low_s) * np.clip((goal - begin) / (end - begin), 0.0, 1.0)
+    reached_s = guess_s.copy()
+    left = np.arange(len(piece))
+    for _ in range(_MOST_STEPS):
+        value, slope = _straightened(journey, steels, piece[left], guess_s, power[left])
+        excess = value - goal[left]
+        below = excess < 0
+        low_s = np.where(below, guess_s, low_s)
+        high_s = np.where(below, high_s, guess_s)
+        with np.errstate(divide="ignore", invalid="ignore"):
+            step_s = guess_s - excess / slope
+        next_s = np.where((step_s >= low_s) & (step_s <= high_s), step_s, 0.5 * (low_s + high_s))
+        reached_s[left] = next_s
+        still = (np.abs(next_s - guess_s) > _TIME_TOLERANCE_S) & (high_s - low_s > _TIME_TOLERANCE_S)
+        left, guess_s, low_s, high_s = left[still], next_s[still], low_s[still], high_s[still]
+        if not len(left):
+            break
+    return reached_s
+
+
+def _straight(steels: Steels, coil: Rows, exposure_s: Floats) -> Floats:
+    return locking_exponent(exposure_s, steels.tau_s[coil], steels.exponent[coil])
+
+
+def _straightened(
+    journey: Journey, steels: Steels, piece: Rows, at_s: Floats, power: Floats
+) -> tuple[Floats, Floats]:
+    """g^(1/m) with the first channel's m, and its slope in time, 1/s."""
+    coil = journey.pieces.coil[piece]
+    coil_k, exposure_s = journey.at(piece, at_s)
+    ratio = exposure_s / steels.tau_s[coil]
+    exponent = steels.exponent[coil]
+    activation = np.array([*journey.field.activation_j_mol, 0.0])[journey.channel[coil]]
+    speed = rate(coil_k[:, None], activation) / steels.tau_s[coil]
+    term = ratio**exponent
+    locking = term.sum(axis=1)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        slope = np.where(ratio > 0, exponent * term / ratio * speed, 0.0).sum(axis=1)
+        value = locking**power
+        return value, power * value / locking * slope
