@@ -1,4 +1,4 @@
-"""What the rooms keep in the store and hand to each other: journal rows, messages, sources and kept rejects."""
+"""What the rooms keep in the store and hand to each other: journal rows, messages, sources, kept rejects."""
 
 from __future__ import annotations
 
@@ -97,7 +97,7 @@ class StoredReject:
 
 @dataclass(frozen=True, slots=True)
 class Put:
-    """What putting rows into the store did: how many were new, changed what stood there, or stood there already."""
+    """What putting rows into the store did, by count of rows (of several with one key, the last counts)."""
 
     new: int
     changed: int

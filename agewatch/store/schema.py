@@ -1,4 +1,7 @@
-"""Every table of the store. Times are whole milliseconds since 1970 in UTC (`_ms`)."""
+"""Every table of the store. Times are whole milliseconds since 1970 in UTC (`_ms`).
+
+Whoever changes a table adds a revision to agewatch/store/migrations: a test holds the two together.
+"""
 
 from __future__ import annotations
 
@@ -6,6 +9,7 @@ from sqlalchemy import (
     BigInteger,
     Boolean,
     Column,
+    Connection,
     Double,
     ForeignKey,
     Index,
@@ -16,6 +20,7 @@ from sqlalchemy import (
     Table,
     Text,
     UniqueConstraint,
+    event,
 )
 
 metadata = MetaData(
@@ -57,7 +62,8 @@ coil = Table(
     Column("nb_pct", Double),
     Column("al_pct", Double),
     Column("first_seen_ms", BigInteger, nullable=False),
-    Column("last_seen_ms", BigInteger, nullable=False),  # a coil that leaves its feed stays; this tells since when
+    Column("last_seen_ms", BigInteger, nullable=False),  # a coil that leaves its feed stays; to the hour
+    sqlite_with_rowid=False,  # read in the order of the key, which the clustered key gives for nothing
 )
 
 move = Table(
@@ -67,6 +73,7 @@ move = Table(
     Column("at_ms", BigInteger, primary_key=True),
     Column("location", String, nullable=False),
     Column("origin", String, nullable=False),  # "moves" (told) or "coils" (seen elsewhere in a snapshot)
+    sqlite_with_rowid=False,
 )
 
 press_plan = Table(
@@ -75,6 +82,7 @@ press_plan = Table(
     Column("coil_id", String, primary_key=True),
     Column("press_ms", BigInteger, nullable=False),
     Column("received_ms", BigInteger, nullable=False),
+    sqlite_with_rowid=False,
 )
 
 sensor = Table(
@@ -187,6 +195,18 @@ journal = Table(
     Index(None, "topic", "subject", "seq"),
     sqlite_autoincrement=True,
 )
+_APPEND_ONLY = (
+    "CREATE TRIGGER journal_refuses_{change} BEFORE {change} ON journal "
+    "BEGIN SELECT RAISE(ABORT, 'the journal is append-only'); END"
+)
+
+
+@event.listens_for(journal, "after_create")
+def _keep_append_only(_table: Table, connection: Connection, **_options: object) -> None:
+    if connection.dialect.name == "sqlite":
+        for change in ("update", "delete"):
+            connection.exec_driver_sql(_APPEND_ONLY.format(change=change))
+
 
 message = Table(
     "message",
