@@ -153,7 +153,12 @@ TABLES = {table.name: table for table in (COILS, MOVES, PRESSES, TEMPERATURES, O
 
 @dataclass(frozen=True, slots=True)
 class Reject:
-    """A row that cannot be used, kept as it came. `column` is empty when the whole row is at fault."""
+    """A row that cannot be used, kept as it came.
+
+    `source` is the file, relative to the settings' folder; `line` is where the row starts in it; `column` is the
+    source's own name of the first cell at fault, empty when the whole row is. `header` is the line that names the
+    cells of `raw`, so that a mended row can be read again on its own.
+    """
 
     table: str
     source: str
@@ -161,3 +166,4 @@ class Reject:
     column: str
     reason: str
     raw: str
+    header: str

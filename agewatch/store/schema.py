@@ -147,6 +147,7 @@ reject = Table(
     Column("column", String, nullable=False),
     Column("reason", Text, nullable=False),
     Column("raw", Text, nullable=False),
+    Column("header", Text, nullable=False),  # the line that names the cells of raw
     Column("received_ms", BigInteger, nullable=False),
     Column("resubmitted_ms", BigInteger),  # set once the row, mended, has been taken in
 )
