@@ -1,4 +1,4 @@
-"""Conditions of what AgeWatch depends on: sensors, locations, feeds, receivers. Every subject gets one."""
+"""Conditions of what AgeWatch depends on: sensors, locations, feeds, endpoints. Every subject gets one."""
 
 from __future__ import annotations
 
@@ -15,7 +15,7 @@ REJECTS_DEADBAND = 0.5
 
 
 @dataclass(frozen=True, slots=True)
-class Sensor:
+class SensorHealth:
     """A sensor, its location, and its latest reading not in the future [s since 1970]; None: never one."""
 
     name: str
@@ -24,7 +24,7 @@ class Sensor:
 
 
 @dataclass(frozen=True, slots=True)
-class Feed:
+class FeedHealth:
     """A feed: when it last brought news, how long it may be quiet, and why it cannot be read ("": it can)."""
 
     name: str
@@ -34,8 +34,8 @@ class Feed:
 
 
 @dataclass(frozen=True, slots=True)
-class Receiver:
-    """A receiver: since when no message gets through, whether it is gone for good, messages set aside."""
+class EndpointHealth:
+    """An endpoint: since when no message gets through, whether it is gone for good, messages set aside."""
 
     name: str
     failing_since_s: float | None
@@ -59,7 +59,7 @@ def system_condition(
     return Condition(kind, subject, Observed(at_s, active, RATIONALISATION[kind].priority, location, detail))
 
 
-def silent_sensors(sensors: Iterable[Sensor], at_s: float, silent_after_s: float) -> list[Condition]:
+def silent_sensors(sensors: Iterable[SensorHealth], at_s: float, silent_after_s: float) -> list[Condition]:
     """sensor-silent for every sensor: active when its last reading is more than `silent_after_s` ago."""
     return [
         system_condition(
@@ -76,7 +76,7 @@ def silent_sensors(sensors: Iterable[Sensor], at_s: float, silent_after_s: float
 
 
 def uncovered_locations(
-    sensors: Iterable[Sensor], coils: Mapping[str, int], at_s: float, silent_after_s: float
+    sensors: Iterable[SensorHealth], coils: Mapping[str, int], at_s: float, silent_after_s: float
 ) -> list[Condition]:
     """location-uncovered for every location in `coils` (location → stored coils).
 
@@ -102,7 +102,7 @@ def uncovered_locations(
     ]
 
 
-def stale_feeds(feeds: Iterable[Feed], at_s: float) -> list[Condition]:
+def stale_feeds(feeds: Iterable[FeedHealth], at_s: float) -> list[Condition]:
     """feed-stale for every feed: active when it cannot be read, or has been quiet for longer than it may."""
     return [
         system_condition(
@@ -139,8 +139,10 @@ def high_rejects(
     return conditions
 
 
-def failing_deliveries(receivers: Iterable[Receiver], at_s: float, failing_after_s: float) -> list[Condition]:
-    """delivery-failing for every receiver.
+def failing_deliveries(
+    endpoints: Iterable[EndpointHealth], at_s: float, failing_after_s: float
+) -> list[Condition]:
+    """delivery-failing for every endpoint.
 
     Active when it is disabled, when messages to it are set aside, or when none has got through for
     `failing_after_s`.
@@ -148,16 +150,16 @@ def failing_deliveries(receivers: Iterable[Receiver], at_s: float, failing_after
     return [
         system_condition(
             AlarmKind.DELIVERY_FAILING,
-            receiver.name,
+            endpoint.name,
             at_s,
-            active=receiver.disabled
-            or receiver.set_aside > 0
-            or (receiver.failing_since_s is not None and at_s - receiver.failing_since_s >= failing_after_s),
-            reason=_delivery_reason(receiver),
-            failing_since_s=receiver.failing_since_s,
-            set_aside=receiver.set_aside,
+            active=endpoint.disabled
+            or endpoint.set_aside > 0
+            or (endpoint.failing_since_s is not None and at_s - endpoint.failing_since_s >= failing_after_s),
+            reason=_delivery_reason(endpoint),
+            failing_since_s=endpoint.failing_since_s,
+            set_aside=endpoint.set_aside,
         )
-        for receiver in receivers
+        for endpoint in endpoints
     ]
 
 
@@ -171,11 +173,11 @@ def _since(what: str, last_s: float | None, at_s: float) -> str:
     return f"{what}: {max(0.0, at_s - last_s) / 3600:.1f} h ago"
 
 
-def _delivery_reason(receiver: Receiver) -> str:
-    if receiver.disabled:
+def _delivery_reason(endpoint: EndpointHealth) -> str:
+    if endpoint.disabled:
         return "the receiver has said that it is gone for good (410); nothing is sent to it any more"
-    if receiver.set_aside:
-        return f"{receiver.set_aside} messages are set aside; last answer: {receiver.last_error or 'none'}"
-    if receiver.failing_since_s is not None:
-        return f"messages do not get through: {receiver.last_error or 'no answer'}"
+    if endpoint.set_aside:
+        return f"{endpoint.set_aside} messages are set aside; last answer: {endpoint.last_error or 'none'}"
+    if endpoint.failing_since_s is not None:
+        return f"messages do not get through: {endpoint.last_error or 'no answer'}"
     return "messages get through"

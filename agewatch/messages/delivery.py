@@ -33,18 +33,16 @@ class _UntilDeadline(io.RawIOBase):
     def __init__(self, raw: io.RawIOBase, connection: socket.socket) -> None:
         self._raw = raw
         self._connection = connection
-        allowed_s = connection.gettimeout()
-        self._deadline_s = None if allowed_s is None else monotonic() + allowed_s
+        self._deadline_s = monotonic() + (connection.gettimeout() or 0.0)
 
     def readable(self) -> bool:
         return True
 
     def readinto(self, buffer: Any) -> int | None:
-        if self._deadline_s is not None:
-            left_s = self._deadline_s - monotonic()
-            if left_s <= 0:
-                raise TimeoutError("the whole answer did not come in time")
-            self._connection.settimeout(left_s)
+        left_s = self._deadline_s - monotonic()
+        if left_s <= 0:
+            raise TimeoutError("the whole answer did not come in time")
+        self._connection.settimeout(left_s)
         return self._raw.readinto(buffer)
 
     def close(self) -> None:
@@ -123,10 +121,8 @@ def attempt(
             stream=True,
         ) as response:
             return _outcome(response, now_s)
-    except (
-        OSError,
-        urllib3.exceptions.HTTPError,
-    ) as fault:  # requests' errors are OSError; so is a lost CA file
+    except (OSError, ValueError, urllib3.exceptions.HTTPError) as fault:
+        # requests' errors are OSErrors, and so is a lost ca_file; a time limit of 0 s is a ValueError
         return Outcome(OutcomeKind.IN_TROUBLE, _trouble(endpoint, fault))
 
 

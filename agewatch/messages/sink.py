@@ -23,7 +23,6 @@ from agewatch.messages.signing import ID_HEADER, Verification, key_of
 BODY_LIMIT = 65_536
 """Longest body that is read, in bytes; AgeWatch's own are shorter than 20,000."""
 KEPT = 10_000
-"""Messages that are remembered."""
 DISCARDED = 1_000_000
 """Of a longer body so much is read and dropped, so that its sender gets to read the answer."""
 WAIT_S = 10.0
@@ -43,15 +42,20 @@ class Sink:
         *,
         host: str = "127.0.0.1",
         port: int = 0,
+        kept: int = KEPT,
     ) -> None:
-        """Bind at once: `port` 0 takes a free one. Raises SettingsError (secrets) and OSError (address)."""
+        """Bind at once: `port` 0 takes a free one. Raises SettingsError (secrets) and OSError (address).
+
+        kept: how many messages are remembered, in `received` and to know what comes again.
+        """
         for secret in secrets:
             key_of(secret)
         self._secrets = tuple(secrets)
         self._clock = clock
         self._show = show
         self._seen: OrderedDict[str, None] = OrderedDict()
-        self._received: deque[ReceivedMessage] = deque(maxlen=KEPT)
+        self._kept = kept
+        self._received: deque[ReceivedMessage] = deque(maxlen=kept)
         self._turn = Lock()
         self._server = _Server((host, port), _Handler, self)
         self._thread = Thread(target=self._server.serve_forever, args=(0.05,), name="sink", daemon=True)
@@ -67,7 +71,7 @@ class Sink:
 
     @property
     def received(self) -> list[ReceivedMessage]:
-        """The last `KEPT` messages, oldest first."""
+        """The last `kept` messages, oldest first."""
         with self._turn:
             return list(self._received)
 
@@ -107,7 +111,7 @@ class Sink:
             duplicate = verification.holds and message_id in self._seen
             if verification:
                 self._seen[message_id] = None
-            if len(self._seen) > KEPT:
+            if len(self._seen) > self._kept:
                 self._seen.popitem(last=False)
             message = ReceivedMessage(
                 id=message_id,

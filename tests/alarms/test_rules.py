@@ -7,7 +7,7 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from agewatch.alarms import (
@@ -229,6 +229,7 @@ def _mixed(rows: Sequence[tuple[float, float, float, str]], ids: Sequence[str]) 
     )
 
 
+@settings(max_examples=50)
 @given(data=st.data(), first=st.lists(COIL, min_size=1, max_size=6))
 def test_the_order_of_the_coils_is_irrelevant(
     data: st.DataObject, first: list[tuple[float, float, float, str]]
@@ -245,6 +246,7 @@ def test_the_order_of_the_coils_is_irrelevant(
         assert alone == {key: alarm for key, alarm in together.items() if key[1] == coil}
 
 
+@settings(max_examples=50)
 @given(data=st.data(), first=st.lists(COIL, min_size=1, max_size=6))
 def test_what_stands_has_told_how_things_are(
     data: st.DataObject, first: list[tuple[float, float, float, str]]

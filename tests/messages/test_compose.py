@@ -8,7 +8,7 @@ from random import Random
 from typing import Any
 
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from agewatch.alarms import (
@@ -228,6 +228,7 @@ def test_one_turn_is_one_message_for_each_location_and_type() -> None:
     ]
 
 
+@settings(max_examples=25)
 @given(st.randoms(use_true_random=False))
 def test_the_order_of_the_effects_is_irrelevant(shuffle: Random) -> None:
     """Equal turns give equal messages to the byte, ids included."""

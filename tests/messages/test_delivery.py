@@ -5,7 +5,7 @@ from __future__ import annotations
 import socket
 import ssl
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager, suppress
+from contextlib import ExitStack, contextmanager, suppress
 from pathlib import Path
 from threading import Event, Thread
 from time import monotonic
@@ -199,6 +199,39 @@ def test_an_endless_answer_is_read_no_further_than_its_limit() -> None:
     with raw_server(flood) as url:
         outcome = send(endpoint(url))
     assert outcome == Outcome(OutcomeKind.IN_TROUBLE, "it answered 500: " + "y" * 200 + "…")
+
+
+def test_a_receiver_that_puts_off_for_ever_is_left_in_time() -> None:
+    """Interim answers without end ("continue") do not stretch the read timeout either."""
+
+    def put_off(connection: socket.socket, ended: Event) -> None:
+        while not ended.is_set():
+            connection.sendall(b"HTTP/1.1 100 Continue\r\n\r\n" * 100)
+
+    with raw_server(put_off) as url:
+        began_s = monotonic()
+        outcome = send(endpoint(url, read_s=0.3))
+        assert monotonic() - began_s < 3.0
+    assert outcome == Outcome(OutcomeKind.IN_TROUBLE, "no whole answer within 0.3 s")
+
+
+def test_a_receiver_that_takes_no_more_connections_is_left_in_time() -> None:
+    """A full queue of connections ends in the connect timeout, which the reason names."""
+    with socket.create_server(("127.0.0.1", 0), backlog=0) as full:
+        address = full.getsockname()
+        with ExitStack() as waiting:
+            with suppress(TimeoutError):
+                while True:
+                    waiting.enter_context(socket.create_connection(address, timeout=0.2))
+            outcome = send(endpoint(f"http://127.0.0.1:{address[1]}/in", connect_s=0.3))
+    assert outcome == Outcome(OutcomeKind.IN_TROUBLE, "no connection within 0.3 s")
+
+
+def test_a_time_limit_of_nothing_is_an_outcome() -> None:
+    """A limit of 0 s that got past the settings stops the message with its reason, and not the worker."""
+    outcome = send(endpoint("http://127.0.0.1:9/in", connect_s=0.0))
+    assert outcome.kind is OutcomeKind.IN_TROUBLE
+    assert "timeout" in outcome.reason
 
 
 def test_a_receiver_that_is_not_there_is_named_so() -> None:

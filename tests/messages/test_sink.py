@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import socket
+import struct
 from collections.abc import Iterator
 from dataclasses import replace
 from http.client import HTTPConnection
@@ -140,6 +141,38 @@ def test_a_sender_that_says_nothing_does_not_hold_up_the_end(shown: list[Receive
         sink.stop()
         with Sink([SECRET], StoppedClock(NOW), shown.append, port=sink.port) as again:
             assert send(again).kind is OutcomeKind.DELIVERED
+
+
+def test_a_sender_that_hangs_up_is_no_error(sink: Sink, capfd: pytest.CaptureFixture[str]) -> None:
+    """A connection that is reset in the middle of a message leaves no trace and no message."""
+    with socket.create_connection(("127.0.0.1", sink.port), timeout=5) as sender:
+        sender.sendall(b"POST / HTTP/1.1\r\nContent-Length: 500\r\n\r\nbeginning")
+        sender.setsockopt(socket.SOL_SOCKET, socket.SO_LINGER, struct.pack("ii", 1, 0))
+    assert send(sink).kind is OutcomeKind.DELIVERED
+    assert len(sink.received) == 1
+    assert capfd.readouterr().err == ""
+
+
+def test_a_fault_in_showing_is_reported_and_the_sender_tries_again(capfd: pytest.CaptureFixture[str]) -> None:
+    """When a message cannot be shown it is not acknowledged, and the fault is not hidden."""
+
+    def fail(_: ReceivedMessage) -> None:
+        raise RuntimeError("the screen is gone")
+
+    with Sink([SECRET], StoppedClock(NOW), fail) as sink:
+        assert send(sink).kind is OutcomeKind.IN_TROUBLE
+    assert "the screen is gone" in capfd.readouterr().err
+
+
+def test_only_so_many_messages_are_remembered() -> None:
+    """Memory is bounded: what was forgotten is new again."""
+    with Sink([SECRET], StoppedClock(NOW), lambda _: None, kept=2) as sink:
+        for coil in ("C-1", "C-2", "C-3", "C-1"):
+            send(sink, coil)
+        assert [(one.coils, one.duplicate) for one in sink.received] == [
+            (("C-3",), False),
+            (("C-1",), False),
+        ]
 
 
 def test_several_secrets_are_good() -> None:
