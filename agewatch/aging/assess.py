@@ -76,24 +76,25 @@ def now(stock: Stock) -> Now:
 def return_quantiles_s(stock: Stock, state: Now) -> Floats:
     """When each coil's plateau has returned with P10, P50 and P90, s, (3, n_coils); NaN: not by the horizon."""
     count = len(stock.limit_pct)
-    coil = np.tile(np.arange(count), len(PROBABILITIES))
+    everyone = np.arange(count)
     needed = _needed(stock)
-    noise, shift = _noise(stock, np.arange(count), np.full(count, stock.at_s), state.exposure_s)
-    noise, shift = np.tile(noise, len(PROBABILITIES)), np.tile(shift, len(PROBABILITIES))
-    level = _levels(needed, noise)
-    reached_s = return_s(stock.journey, stock.steels, coil, np.exp(level - shift))
-    for _ in range(_PASSES):
-        rows = np.flatnonzero(_noise_varies(stock)[coil])
-        if not len(rows):
-            break
-        at_s = np.where(np.isnan(reached_s[rows]), stock.horizon_s, reached_s[rows])
-        exposure_s = _exposure_at(stock.journey, coil[rows], at_s)
-        noise[rows], shift[rows] = _noise(stock, coil[rows], at_s, exposure_s)
-        level = _levels(needed, noise)
-        reached_s[rows] = return_s(
-            stock.journey, stock.steels, coil[rows], np.exp(level[rows] - shift[rows])
-        )
-    return reached_s.reshape(len(PROBABILITIES), count)
+    noise, shift = noise_of(stock, everyone, np.full(count, stock.at_s), state.exposure_s)
+    varies = np.flatnonzero(_noise_varies(stock))
+    returns_s = np.empty((len(PROBABILITIES), count))
+    before = np.full(count, np.nan)
+    for place, probability in enumerate(PROBABILITIES):
+        level = log_locking_levels(needed, noise, probability)
+        returns_s[place] = returns_s[place - 1]
+        other = np.flatnonzero(level != before)  # without spreads the quantiles are one
+        returns_s[place, other] = return_s(stock.journey, stock.steels, other, np.exp(level - shift)[other])
+        before = level
+        for _ in range(_PASSES if len(varies) else 0):
+            at_s = returns_s[place, varies]
+            at_s = np.where(np.isnan(at_s), stock.horizon_s, at_s)
+            then, moved = noise_of(stock, varies, at_s, _exposure_at(stock.journey, varies, at_s))
+            refined = np.exp(log_locking_levels(needed.take(varies), then, probability) - moved)
+            returns_s[place, varies] = return_s(stock.journey, stock.steels, varies, refined)
+    return returns_s
 
 
 def return_risk(stock: Stock, until_s: Floats) -> Floats:
@@ -104,7 +105,7 @@ def return_risk(stock: Stock, until_s: Floats) -> Floats:
         return risk
     at_s = np.minimum(until_s[coil], stock.horizon_s)
     exposure_s = _exposure_at(stock.journey, coil, at_s)
-    noise, shift = _noise(stock, coil, at_s, exposure_s)
+    noise, shift = noise_of(stock, coil, at_s, exposure_s)
     with np.errstate(divide="ignore"):
         log_locking = np.log(stock.steels.take(coil).locking(exposure_s)) + shift
     risk[coil] = return_probability(_needed(stock).threshold().take(coil), log_locking, noise)
@@ -117,18 +118,7 @@ def _needed(stock: Stock) -> Needed:
         stock.spreads.needed_mpa,
         stock.steels.saturation_mpa,
         stock.spreads.log_saturation,
-    )
-
-
-def _levels(needed: Needed, noise: Floats) -> Floats:
-    """ln g to reach for each of PROBABILITIES, one after another, (3 n_coils,)."""
-    return np.concatenate(
-        [
-            log_locking_levels(needed, part, probability)
-            for part, probability in zip(
-                np.split(noise, len(PROBABILITIES)), PROBABILITIES, strict=True
-            )
-        ]
+        stock.spreads.kind,
     )
 
 
@@ -144,7 +134,7 @@ def _noise_varies(stock: Stock) -> np.ndarray[tuple[int], np.dtype[np.bool_]]:
     return np.asarray(ages & (several | weather | (stock.raised is not None)))
 
 
-def _noise(stock: Stock, coil: Rows, at_s: Floats, exposure_s: Floats) -> tuple[Floats, Floats]:
+def noise_of(stock: Stock, coil: Rows, at_s: Floats, exposure_s: Floats) -> tuple[Floats, Floats]:
     """Standard deviation of ln g at `at_s`, and how far its mean lies above the ln g of the medians, (n,).
 
     Notes

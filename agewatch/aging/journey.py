@@ -28,6 +28,12 @@ class Legs:
         """Legs that begin a journey."""
         return np.append(True, self.coil[1:] != self.coil[:-1])
 
+    def of_coils(self, begin: int, end: int) -> Legs:
+        """The legs of the coils from row `begin` to before row `end`, as a stock of their own."""
+        first, last = np.searchsorted(self.coil, [begin, end])
+        own = slice(first, last)
+        return Legs(self.coil[own] - begin, self.location[own], self.start_s[own], self.tau_s[own])
+
     def end_s(self, horizon_s: float) -> Floats:
         """Where the next leg of the same coil starts, else the horizon."""
         last = np.append(self.first()[1:], True)
@@ -79,9 +85,7 @@ class Journey:
     end_exposure_s: Floats
 
     @classmethod
-    def of(
-        cls, field: SettledField, channel: Rows, legs: Legs, start_k: Floats, horizon_s: float
-    ) -> Journey:
+    def of(cls, field: SettledField, channel: Rows, legs: Legs, start_k: Floats, horizon_s: float) -> Journey:
         """Join the legs.
 
         Parameters
@@ -97,7 +101,9 @@ class Journey:
         moment_s = np.zeros(piece_channel.shape)
         near = np.flatnonzero(~pieces.far)
         begins = pieces.take(near)
-        _, moment_s[near] = field.moment(piece_channel[near], begins.standing, begins.start_s, begins.excess_k)
+        _, moment_s[near] = field.moment(
+            piece_channel[near], begins.standing, begins.start_s, begins.excess_k
+        )
         _, gathered_s = _gathered(field, piece_channel, pieces, moment_s, pieces.end_s)
         until_s = np.cumsum(gathered_s, axis=0)
         before_s = until_s - gathered_s
@@ -204,28 +210,43 @@ def _far_exposure_s(field: SettledField, channel: Rows, pieces: Pieces, at_s: Fl
     """Exposure from the start of far pieces to `at_s`, knot by knot along the coil's own temperature."""
     exposure_s = np.zeros(channel.shape)
     first = field.curves.locate(pieces.standing.location, pieces.start_s)
-    steps = field.curves.locate(pieces.standing.location, at_s) - first + 1
-    order = np.argsort(steps, kind="stable")
-    for rows in np.array_split(order, max(1, min(len(order), int(steps.sum()) // _BATCH_STEPS))):
-        knot = first[rows, None] + np.arange(int(steps[rows].max()) + 1)
+    inner = field.curves.locate(pieces.standing.location, at_s) - first
+    order = np.argsort(inner, kind="stable")
+    for rows in np.array_split(order, max(1, min(len(order), int(inner.sum()) // _BATCH_STEPS))):
+        knot = first[rows, None] + np.arange(1, int(inner[rows].max()) + 1)
         exposure_s[rows] = _along_knots_s(field, channel[rows], pieces.take(rows), knot, at_s[rows])
     return exposure_s
 
 
-def _along_knots_s(
-    field: SettledField, channel: Rows, pieces: Pieces, knot: Rows, at_s: Floats
-) -> Floats:
-    """Exposure over the pieces of curve that begin at `knot` (n, m), cut to the start and to `at_s`."""
-    curves, standing = field.curves, pieces.standing
-    knot_s = curves.knot_s[standing.location[:, None], np.minimum(knot, curves.knot_s.shape[1] - 1)]
-    node_s = np.clip(knot_s, pieces.start_s[:, None], at_s[:, None])
-    settled_k, slope_k_s = field.settled_k_and_slope(standing, node_s)
+def _along_knots_s(field: SettledField, channel: Rows, pieces: Pieces, knot: Rows, at_s: Floats) -> Floats:
+    """Exposure from the start through the knots (n, m) that lie before `at_s`, to `at_s`.
+
+    Knots beyond `at_s`, which fill up the shorter rows, become steps of no length.
+    """
+    standing = pieces.standing
+    ends_s = np.stack([pieces.start_s, at_s], axis=1)
+    ends_k, ends_air_k = field.settled_and_air_k(standing, ends_s)
+    knot_s, settled_k, air_k = field.at_knots(standing, knot)
+    beyond = knot_s >= at_s[:, None]
+    node_s = _between(ends_s, np.where(beyond, at_s[:, None], knot_s))
+    settled_k = _between(ends_k, np.where(beyond, ends_k[:, 1:], settled_k))
+    air_k = _between(ends_air_k, np.where(beyond, ends_air_k[:, 1:], air_k))
     tau_s = standing.tau_s[:, None]
-    excess_k = pieces.excess_k[:, None] * np.exp(-(node_s - pieces.start_s[:, None]) / tau_s)
-    coil_k, slope_k_s = settled_k + excess_k, slope_k_s - excess_k / tau_s
+    coil_k = settled_k + pieces.excess_k[:, None] * np.exp((pieces.start_s[:, None] - node_s) / tau_s)
+    slope_k_s = (air_k - coil_k) / tau_s
     exposure_s = np.zeros(channel.shape)
+    activation = np.array([*field.activation_j_mol, 0.0])
     for slot in range(channel.shape[1]):
         rows = np.flatnonzero(channel[:, slot] >= 0)
-        activation = np.array(field.activation_j_mol)[channel[rows, slot]][:, None]
-        exposure_s[rows, slot] = path_exposure_s(coil_k[rows], slope_k_s[rows], node_s[rows], activation)
+        path = (
+            (coil_k, slope_k_s, node_s)
+            if len(rows) == len(channel)
+            else (coil_k[rows], slope_k_s[rows], node_s[rows])
+        )
+        exposure_s[rows, slot] = path_exposure_s(*path, activation[channel[rows, slot]][:, None])
     return exposure_s
+
+
+def _between(ends: Floats, inner: Floats) -> Floats:
+    """`inner` (n, m) between the two columns of `ends`."""
+    return np.concatenate([ends[:, :1], inner, ends[:, 1:]], axis=1)

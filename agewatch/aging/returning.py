@@ -11,6 +11,8 @@ from agewatch.aging.settled import Rows
 from agewatch.aging.steels import Steels
 
 _TIME_TOLERANCE_S = 1.0
+_NEWTON_REACH_S = 300.0
+"""After a Newton step shorter than this the next one would be below the tolerance."""
 _MOST_STEPS = 60
 
 
@@ -42,9 +44,7 @@ def return_s(journey: Journey, steels: Steels, coil: Rows, locking: Floats) -> F
 def _piece_of_return(journey: Journey, steels: Steels, coil: Rows, locking: Floats) -> Rows:
     """The first piece at whose end g is reached, (n,); -1: none."""
     of_piece = journey.pieces.coil
-    end_locking = locking_exponent(
-        journey.end_exposure_s, steels.tau_s[of_piece], steels.exponent[of_piece]
-    )
+    end_locking = locking_exponent(journey.end_exposure_s, steels.tau_s[of_piece], steels.exponent[of_piece])
     count = np.diff(np.append(journey.first_piece, len(of_piece)))[coil]
     found = np.full(len(coil), -1, dtype=np.intp)
     for step in range(int(count.max(initial=0)) - 1, -1, -1):
@@ -58,9 +58,7 @@ def _solve(journey: Journey, steels: Steels, piece: Rows, locking: Floats) -> Fl
     low_s, high_s = journey.pieces.start_s[piece], journey.pieces.end_s[piece]
     power = 1.0 / steels.exponent[coil, 0]
     goal = locking**power
-    begin = _straight(steels, coil, journey.start_exposure_s[piece]) ** power
-    end = _straight(steels, coil, journey.end_exposure_s[piece]) ** power
-    guess_s = low_s + (high_s - low_s) * np.clip((goal - begin) / (end - begin), 0.0, 1.0)
+    guess_s = np.clip(_guess_s(journey, steels, piece, goal, power), low_s, high_s)
     reached_s = guess_s.copy()
     left = np.arange(len(piece))
     for _ in range(_MOST_STEPS):
@@ -71,13 +69,33 @@ def _solve(journey: Journey, steels: Steels, piece: Rows, locking: Floats) -> Fl
         high_s = np.where(below, high_s, guess_s)
         with np.errstate(divide="ignore", invalid="ignore"):
             step_s = guess_s - excess / slope
-        next_s = np.where((step_s >= low_s) & (step_s <= high_s), step_s, 0.5 * (low_s + high_s))
+        newton = (step_s >= low_s) & (step_s <= high_s)
+        next_s = np.where(newton, step_s, 0.5 * (low_s + high_s))
         reached_s[left] = next_s
-        still = (np.abs(next_s - guess_s) > _TIME_TOLERANCE_S) & (high_s - low_s > _TIME_TOLERANCE_S)
+        close_s = np.where(newton, _NEWTON_REACH_S, _TIME_TOLERANCE_S)
+        still = (np.abs(next_s - guess_s) > close_s) & (high_s - low_s > _TIME_TOLERANCE_S)
         left, guess_s, low_s, high_s = left[still], next_s[still], low_s[still], high_s[still]
         if not len(left):
             break
     return reached_s
+
+
+def _guess_s(journey: Journey, steels: Steels, piece: Rows, goal: Floats, power: Floats) -> Floats:
+    """Near the answer for one channel, where the straightened g is equivalent age over τ; else between the ends."""
+    pieces = journey.pieces.take(piece)
+    coil = pieces.coil
+    begin = _straight(steels, coil, journey.start_exposure_s[piece]) ** power
+    end = _straight(steels, coil, journey.end_exposure_s[piece]) ** power
+    share = np.clip((goal - begin) / (end - begin), 0.0, 1.0)
+    guess_s = pieces.start_s + (pieces.end_s - pieces.start_s) * share
+    single = np.flatnonzero((np.isfinite(steels.tau_s[coil]).sum(axis=1) == 1) & ~pieces.far)
+    still_s = goal[single] * steels.tau_s[coil[single], 0] - journey.start_exposure_s[piece[single], 0]
+    guess_s[single] = journey.field.when_s(
+        journey.channel[coil[single], 0],
+        pieces.standing.take(single),
+        journey.moment_s[piece[single], 0] + still_s,
+    )
+    return guess_s
 
 
 def _straight(steels: Steels, coil: Rows, exposure_s: Floats) -> Floats:

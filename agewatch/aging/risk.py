@@ -25,7 +25,8 @@ _REACH = 6.0
 """Standard deviations that a search spans on either side."""
 _MOST_LOG_LOCKING = 5.0
 """ln g beyond which nothing is left to lock."""
-_BISECTIONS = 40
+_BISECTIONS = 9
+_FALSE_POSITIONS = 4
 _MEAN_STEPS = 64
 _NOISE_STEPS = 6
 
@@ -39,6 +40,17 @@ class Needed:
     spread_mpa: Floats
     saturation_mpa: Floats
     log_saturation_spread: Floats
+    kind: NDArray[np.intp]
+    """Coils of one kind share all but their mean."""
+
+    def take(self, rows: NDArray[np.intp]) -> Needed:
+        return Needed(
+            self.mean_mpa[rows],
+            self.spread_mpa[rows],
+            self.saturation_mpa[rows],
+            self.log_saturation_spread[rows],
+            self.kind[rows],
+        )
 
     def threshold(self) -> Threshold:
         return Threshold.of(self.mean_mpa, self.spread_mpa, self.saturation_mpa, self.log_saturation_spread)
@@ -56,7 +68,11 @@ class Threshold:
 
     @classmethod
     def of(
-        cls, needed_mpa: Floats, needed_spread_mpa: Floats, saturation_mpa: Floats, saturation_spread: Floats
+        cls,
+        needed_mpa: Floats,
+        needed_spread_mpa: Floats | float,
+        saturation_mpa: Floats | float,
+        saturation_spread: Floats | float,
     ) -> Threshold:
         """From the needed rise (MPa, normal) and the saturation (median MPa, spread of its ln).
 
@@ -91,41 +107,53 @@ class Threshold:
         fraction = np.exp(np.minimum(self.mean, -1e-6))
         return np.asarray(self.spread * fraction / ((1.0 - fraction) * -np.log1p(-fraction)))
 
-    def take(self, rows: object) -> Threshold:
-        return Threshold(self.mean[rows], self.spread[rows], self.skewness[rows])  # type: ignore[index]
+    def take(self, rows: NDArray[np.intp]) -> Threshold:
+        return Threshold(self.mean[rows], self.spread[rows], self.skewness[rows])
 
 
 def return_probability(threshold: Threshold, log_locking: Floats, noise: Floats) -> Floats:
     """P(returned) of coils whose median ln g is `log_locking` (−inf: unaged), with `noise` (sd of ln g), (n,)."""
-    over_threshold = noise >= threshold.width()
-    probability = np.empty(np.shape(log_locking))
-    rows = np.flatnonzero(over_threshold)
-    probability[rows] = _over_threshold(threshold.take(rows), log_locking[rows], noise[rows])
-    rows = np.flatnonzero(~over_threshold)
-    probability[rows] = _over_noise(threshold.take(rows), log_locking[rows], noise[rows])
-    return probability
+    return _Mixture.of(threshold, noise).probability(log_locking)
 
 
-def _over_threshold(threshold: Threshold, log_locking: Floats, noise: Floats) -> Floats:
-    """Sum over quantiles of the threshold, the noise being integrated exactly."""
-    total = np.zeros(len(log_locking))
-    sharp = noise <= _SHARP
-    for node, weight in zip(_NODES, _WEIGHTS, strict=True):
+@dataclass(frozen=True, slots=True)
+class _Mixture:
+    """The sum that gives P(returned), prepared for many values of ln g."""
+
+    threshold: Threshold
+    noise: Floats
+    over_threshold: NDArray[np.intp]
+    """Coils whose noise is the wider: nodes are quantiles of the threshold."""
+    over_noise: NDArray[np.intp]
+    node_levels: Floats
+    """Λ at the nodes, for `over_threshold`, (9, n)."""
+
+    @classmethod
+    def of(cls, threshold: Threshold, noise: Floats) -> _Mixture:
+        wider = noise >= threshold.width()
+        over_threshold = np.flatnonzero(wider)
+        chosen = threshold.take(over_threshold)
+        return cls(
+            threshold,
+            noise,
+            over_threshold,
+            np.flatnonzero(~wider & ~np.isnan(threshold.mean)),
+            chosen.log_locking(_NODES[:, None]),
+        )
+
+    def probability(self, log_locking: Floats) -> Floats:
+        total = np.zeros(len(log_locking))
+        rows = self.over_threshold
+        noise = self.noise[rows]
         with np.errstate(divide="ignore", invalid="ignore"):
-            beyond = log_locking - threshold.log_locking(node)
-            share = np.where(sharp, beyond >= 0, ndtr(beyond / noise))
-        total += weight * np.nan_to_num(share, nan=0.0)
-    return np.where(np.isnan(threshold.mean), 0.0, total)
-
-
-def _over_noise(threshold: Threshold, log_locking: Floats, noise: Floats) -> Floats:
-    """Sum over quantiles of the noise, the threshold being integrated exactly."""
-    total = np.zeros(len(log_locking))
-    for node, weight in zip(_NODES, _WEIGHTS, strict=True):
+            beyond = log_locking[rows] - self.node_levels
+            share = np.where(noise > _SHARP, ndtr(beyond / noise), beyond >= 0)
+        total[rows] = _WEIGHTS @ np.nan_to_num(share, nan=0.0)
+        rows = self.over_noise
         with np.errstate(divide="ignore", invalid="ignore"):
-            z = threshold.quantile_of(log_locking + node * noise)
-        total += weight * ndtr(z)
-    return np.where(np.isnan(threshold.mean), 0.0, total)
+            z = self.threshold.take(rows).quantile_of(log_locking[rows] + _NODES[:, None] * self.noise[rows])
+        total[rows] = _WEIGHTS @ ndtr(z)
+        return np.clip(total, 0.0, 1.0)
 
 
 def log_locking_levels(needed: Needed, noise: Floats, probability: float) -> Floats:
@@ -136,24 +164,32 @@ def log_locking_levels(needed: Needed, noise: Floats, probability: float) -> Flo
     """
     plain = needed.threshold().log_locking(0.0)
     level = np.where(np.isnan(plain), np.inf, plain)
-    uncertain = ~np.isnan(plain) & ((noise > _SHARP) | (needed.spread_mpa > 0) | (needed.log_saturation_spread > 0))
+    uncertain = ~np.isnan(plain) & (
+        (noise > _SHARP) | (needed.spread_mpa > 0) | (needed.log_saturation_spread > 0)
+    )
     rows = np.flatnonzero(uncertain)
-    kinds = np.stack([needed.spread_mpa, needed.saturation_mpa, needed.log_saturation_spread], axis=1)[rows]
-    kind, members = np.unique(kinds, axis=0, return_inverse=True)
-    for place, (spread_mpa, saturation_mpa, saturation_spread) in enumerate(kind):
-        own = rows[members.ravel() == place]
-        grid_mpa, grid_noise = _grid(needed.mean_mpa[own], _MEAN_STEPS), _grid(noise[own], _NOISE_STEPS)
-        mean_mpa, around = (axis.ravel() for axis in np.meshgrid(grid_mpa, grid_noise, indexing="ij"))
-        threshold = Threshold.of(mean_mpa, spread_mpa, saturation_mpa, saturation_spread)
-        table = _solved_levels(threshold, around, probability).reshape(len(grid_mpa), len(grid_noise))
-        level[own] = _read_off(table, grid_mpa, grid_noise, needed.mean_mpa[own], noise[own])
+    for kind in np.unique(needed.kind[rows]):
+        own = rows[needed.kind[rows] == kind]
+        level[own] = _levels_of_kind(needed.take(own), noise[own], probability)
     return level
 
 
+def _levels_of_kind(needed: Needed, noise: Floats, probability: float) -> Floats:
+    if len(noise) <= _MEAN_STEPS:
+        return _solved_levels(needed.threshold(), noise, probability)
+    grid_mpa, grid_noise = _grid(needed.mean_mpa, _MEAN_STEPS), _grid(noise, _NOISE_STEPS)
+    mean_mpa, around = (axis.ravel() for axis in np.meshgrid(grid_mpa, grid_noise, indexing="ij"))
+    threshold = Threshold.of(
+        mean_mpa, needed.spread_mpa[0], needed.saturation_mpa[0], needed.log_saturation_spread[0]
+    )
+    table = _solved_levels(threshold, around, probability).reshape(len(grid_mpa), len(grid_noise))
+    return _read_off(table, grid_mpa, grid_noise, needed.mean_mpa, noise)
+
+
 def _grid(values: Floats, most: int) -> Floats:
-    """At most `most` even steps that span the values; the values themselves where they are few."""
-    distinct = np.unique(values)
-    return distinct if len(distinct) <= most else np.linspace(distinct[0], distinct[-1], most)
+    """`most` even steps that span the values; one where they are all alike."""
+    low, high = float(values.min()), float(values.max())
+    return np.array([low]) if low == high else np.linspace(low, high, most)
 
 
 def _read_off(table: Floats, rows_at: Floats, columns_at: Floats, row: Floats, column: Floats) -> Floats:
@@ -164,7 +200,9 @@ def _read_off(table: Floats, rows_at: Floats, columns_at: Floats, row: Floats, c
     for across, weight_i in ((0, 1.0 - u), (1, u)):
         for along, weight_j in ((0, 1.0 - v), (1, v)):
             weight = weight_i * weight_j
-            corner = table[np.minimum(i + across, len(rows_at) - 1), np.minimum(j + along, len(columns_at) - 1)]
+            corner = table[
+                np.minimum(i + across, len(rows_at) - 1), np.minimum(j + along, len(columns_at) - 1)
+            ]
             total += np.where(weight > 0, weight * np.where(weight > 0, corner, 0.0), 0.0)
     return total
 
@@ -176,14 +214,20 @@ def _between(grid: Floats, values: Floats) -> tuple[NDArray[np.intp], Floats]:
 
 
 def _solved_levels(threshold: Threshold, noise: Floats, probability: float) -> Floats:
-    """ln g at which P(returned) reaches `probability` by bisection, (n,)."""
+    """ln g at which P(returned) reaches `probability`, (n,): bisection, then false position on the probit."""
     z = float(ndtri(probability))
-    low = np.minimum(threshold.log_locking(-_REACH), threshold.log_locking(0.0)) - _REACH * noise - 1e-9
+    mixture = _Mixture.of(threshold, noise)
+    low = np.minimum(threshold.log_locking(-_REACH), _MOST_LOG_LOCKING) - _REACH * noise - 1e-9
     high = np.full_like(low, _MOST_LOG_LOCKING) + _REACH * noise
-    never = return_probability(threshold, high, noise) < probability
-    for _ in range(_BISECTIONS):
-        middle = 0.5 * (low + high)
-        reached = return_probability(threshold, middle, noise) >= probability
-        low, high = np.where(reached, low, middle), np.where(reached, middle, high)
-    level = np.where(noise <= _SHARP, threshold.log_locking(z), high)
+    never = mixture.probability(high) < probability
+    under, over = np.full_like(low, -_REACH) - z, np.full_like(low, _REACH) - z
+    for step in range(_BISECTIONS + _FALSE_POSITIONS):
+        share = 0.5 if step < _BISECTIONS else np.clip(under / (under - over), 0.02, 0.98)
+        at = low + share * (high - low)
+        miss = np.clip(ndtri(mixture.probability(at)), -_REACH, _REACH) - z
+        reached = miss >= 0
+        low, under = np.where(reached, low, at), np.where(reached, under, miss)
+        high, over = np.where(reached, at, high), np.where(reached, miss, over)
+    nearest = low + np.clip(under / (under - over), 0.0, 1.0) * (high - low)
+    level = np.where(noise <= _SHARP, threshold.log_locking(z), nearest)
     return np.where(never, np.inf, level)

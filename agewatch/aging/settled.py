@@ -17,6 +17,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.lib.stride_tricks import sliding_window_view
 from numpy.typing import NDArray
 
 from agewatch.aging.coil_heat import settled_temperature_k
@@ -30,6 +31,8 @@ SERIES_LIMIT_K = 8.0
 """Largest excess for which the series serves: its error is then below 1e-4 of what the excess adds."""
 _UNFELT_K = 1e-4
 """An excess below this adds less than a second."""
+_FELT_LAGS = 20.0
+"""Time constants after which no excess is felt."""
 _CLASS_STEP = 0.2
 """Distance of neighbouring classes in ln τ."""
 _STENCIL = 4
@@ -48,7 +51,10 @@ class Standing:
 
     def take(self, rows: Rows) -> Standing:
         return Standing(
-            self.location.take(rows), self.tau_s.take(rows), self.first.take(rows), self.weight.take(rows, axis=0)
+            self.location.take(rows),
+            self.tau_s.take(rows),
+            self.first.take(rows),
+            self.weight.take(rows, axis=0),
         )
 
 
@@ -63,14 +69,19 @@ class SettledField:
     """U at the knots, (n_knots, n_locations, n_classes)."""
     exposure_s: Floats
     """∫ rate(U) up to each knot, (n_activations, n_knots, n_locations, n_classes)."""
-    estimated_s: Floats | None
-    """The part of `exposure_s` that rests on estimated air; None: none is."""
+    estimated_s: Floats
+    """The part of `exposure_s` that rests on estimated air."""
     series: NDArray[np.float32]
-    """H_k at the knots, (n_activations, n_knots, n_locations, n_classes, SERIES_TERMS), s/K^k."""
+    """H_k, (n_activations, n_first_knots, n_locations, n_classes, SERIES_TERMS), s/K^k; an excess is not felt later."""
 
     @classmethod
-    def of(cls, curves: AirCurves, activation_j_mol: tuple[float, ...], tau_s: Floats) -> SettledField:
-        """Sum the curves once for coils whose time constants lie within those of `tau_s` (s, > 0)."""
+    def of(
+        cls, curves: AirCurves, activation_j_mol: tuple[float, ...], tau_s: Floats, last_arrival_s: float
+    ) -> SettledField:
+        """Sum the curves once for coils whose time constants lie within those of `tau_s` (s, > 0).
+
+        `last_arrival_s` is when the last of them came to a location.
+        """
         class_tau_s = tau_classes_s(tau_s)
         settled_k = settled_temperature_k(curves, class_tau_s)
         pieces_s = [_piece_exposure_s(curves, settled_k, class_tau_s, q) for q in activation_j_mol]
@@ -81,8 +92,14 @@ class SettledField:
             class_tau_s,
             settled_k,
             _summed(pieces_s),
-            _summed([piece_s * estimated for piece_s in pieces_s]) if estimated.any() else None,
-            np.stack([_excess_series(curves, settled_k, class_tau_s, q) for q in activation_j_mol]),
+            _summed([piece_s * estimated for piece_s in pieces_s]),
+            _excess_series(
+                curves,
+                settled_k,
+                class_tau_s,
+                activation_j_mol,
+                last_arrival_s + _FELT_LAGS * class_tau_s[-1],
+            ),
         )
 
     def standing(self, location: Rows, tau_s: Floats) -> Standing:
@@ -103,10 +120,18 @@ class SettledField:
         """U at `at_s`, K, (n,)."""
         return self._place(standing, at_s).settled_k
 
-    def settled_k_and_slope(self, standing: Standing, at_s: Floats) -> tuple[Floats, Floats]:
-        """U (K) and dU/dt (K/s) at m times of each coil, (n, m)."""
+    def settled_and_air_k(self, standing: Standing, at_s: Floats) -> tuple[Floats, Floats]:
+        """U and the air, K, at m times of each coil, (n, m)."""
         place = self._place(standing, at_s)
-        return place.settled_k, place.slope
+        return place.settled_k, place.settled_k + place.slope * standing.tau_s[:, None]
+
+    def at_knots(self, standing: Standing, knot: Rows) -> tuple[Floats, Floats, Floats]:
+        """Time (s), U and air (K) at knots (n, m) of each coil's location; knots past the last are the last."""
+        n_locations, n_knots = self.curves.knot_s.shape
+        location, knot = standing.location[:, None], np.minimum(knot, n_knots - 1)
+        at = location * n_knots + knot
+        settled_k = _between_classes(self.settled_k, knot * n_locations + location, standing)
+        return self.curves.knot_s.reshape(-1).take(at), settled_k, self.curves.air_k.reshape(-1).take(at)
 
     def moment(
         self, channel: Rows, standing: Standing, at_s: Floats, excess_k: Floats
@@ -135,16 +160,42 @@ class SettledField:
             )
         return place.settled_k + excess_k, exposure_s
 
+    def when_s(self, channel: Rows, standing: Standing, exposure_s: Floats) -> Floats:
+        """About when a settled coil has gathered `exposure_s`, s, (n,): read off the nearest class."""
+        n_locations, n_classes = self.settled_k.shape[1:]
+        nearest = standing.first + np.argmax(standing.weight, axis=1)
+        kind = (channel * n_locations + standing.location) * n_classes + nearest
+        order = np.argsort(kind, kind="stable")
+        bounds = np.flatnonzero(np.diff(kind[order], prepend=-1, append=-1))
+        at_s = np.empty(len(channel))
+        for begin, end in zip(bounds[:-1], bounds[1:], strict=True):
+            rows = order[begin:end]
+            place, tau_class = divmod(int(kind[rows[0]]), n_classes)
+            activation, location = divmod(place, n_locations)
+            at_s[rows] = np.interp(
+                exposure_s[rows],
+                self.exposure_s[activation, :, location, tau_class],
+                self.curves.knot_s[location],
+            )
+        return at_s
+
     def estimated_at_s(self, channel: Rows, standing: Standing, at_s: Floats) -> tuple[Floats, Floats]:
-        """What a settled coil has gathered up to `at_s` on estimated air, and in all, s, (n,); `channel` (n,)."""
-        place = self._place(standing, at_s)
-        total_s = self._settled_exposure_s(channel, place)
-        if self.estimated_s is None:
-            return np.zeros(len(at_s)), total_s
-        row = (channel * len(self.settled_k) + place.knot) * len(self.curves.air_k) + standing.location
-        begin_s = _between_classes(self.estimated_s, row, standing)
-        end_s = _between_classes(self.estimated_s, row + len(self.curves.air_k), standing)
-        return begin_s + (end_s - begin_s) * place.share, total_s
+        """What a settled coil has gathered up to `at_s` on estimated air, and in all, s, (n,); `channel` (n,).
+
+        Straight between knots, which serves a share of the whole.
+        """
+        curves = self.curves
+        knot = curves.locate(standing.location, at_s)
+        at = standing.location * curves.knot_s.shape[1] + knot
+        knot_s = curves.knot_s.reshape(-1)
+        share = np.clip((at_s - knot_s.take(at)) / (knot_s.take(at + 1) - knot_s.take(at)), 0.0, 1.0)
+        row = (channel * len(self.settled_k) + knot) * len(curves.air_k) + standing.location
+        gathered_s = []
+        for sums_s in (self.estimated_s, self.exposure_s):
+            begin_s = _between_classes(sums_s, row, standing)
+            end_s = _between_classes(sums_s, row + len(curves.air_k), standing)
+            gathered_s.append(begin_s + (end_s - begin_s) * share)
+        return gathered_s[0], gathered_s[1]
 
     def _place(self, standing: Standing, at_s: Floats) -> _Place:
         """Where times lie on the curves, and the settled temperature there.
@@ -179,12 +230,12 @@ class SettledField:
 
     def _settled_exposure_s(self, channel: Rows, place: _Place) -> Floats:
         row = (channel * len(self.settled_k) + place.knot) * len(self.curves.air_k) + place.standing.location
-        since_knot_s = path_exposure_s(
-            np.stack([place.begin_k, place.settled_k], axis=-1),
-            np.stack([place.begin_slope, place.slope], axis=-1),
-            np.stack([np.zeros_like(place.elapsed_s), place.elapsed_s], axis=-1),
-            np.array(self.activation_j_mol)[channel][:, None],
-        )
+        activation = np.array(self.activation_j_mol)[channel]
+        begin, end = rate(place.begin_k, activation), rate(place.settled_k, activation)
+        begin_gain = begin * rate_slope(place.begin_k, activation) * place.begin_slope
+        end_gain = end * rate_slope(place.settled_k, activation) * place.slope
+        step_s = place.elapsed_s
+        since_knot_s = step_s * (0.5 * (begin + end) + step_s / 12.0 * (begin_gain - end_gain))
         return _between_classes(self.exposure_s, row, place.standing) + since_knot_s
 
     def _still_to_add_s(self, channel: Rows, place: _Place, excess_k: Floats) -> Floats:
@@ -193,17 +244,16 @@ class SettledField:
         felt = np.flatnonzero(np.abs(excess_k) > _UNFELT_K)
         if not len(felt):
             return to_add_s
-        place, channel = place.take(felt), channel[felt]
-        table = self.series.reshape(-1, SERIES_TERMS)
+        place, channel, excess_k = place.take(felt), channel[felt], excess_k[felt]
         n_locations, n_classes = self.settled_k.shape[1:]
-        row = (channel * len(self.settled_k) + place.knot) * n_locations + place.standing.location
-        base = row * n_classes + place.standing.first
-        share = place.share[:, None]
-        terms = np.zeros((len(felt), SERIES_TERMS))
-        for k in range(_STENCIL):
-            begin, end = table.take(base + k, axis=0), table.take(base + n_locations * n_classes + k, axis=0)
-            terms += place.standing.weight[:, k, None] * (begin + share * (end - begin))
-        excess_k = excess_k[felt]
+        row = (channel * self.series.shape[1] + place.knot) * n_locations + place.standing.location
+        base = (row * n_classes + place.standing.first) * SERIES_TERMS
+        stencils = sliding_window_view(self.series.reshape(-1), _STENCIL * SERIES_TERMS)
+        begin = stencils[base]
+        end = stencils[base + n_locations * n_classes * SERIES_TERMS]
+        begin += place.share.astype(np.float32)[:, None] * (end - begin)
+        by_class = begin.reshape(len(felt), _STENCIL, SERIES_TERMS)
+        terms = np.einsum("nk,nkt->nt", place.standing.weight, by_class)
         to_add_s[felt] = _polynomial(terms, excess_k)
         return to_add_s
 
@@ -286,8 +336,7 @@ def path_exposure_s(
 def _corrected_steps_s(speed: Floats, gain: Floats, step_s: Floats) -> Floats:
     """∫ rate over each step of the last axis from its values and time derivatives at the nodes."""
     return np.asarray(
-        step_s
-        * (0.5 * (speed[..., 1:] + speed[..., :-1]) + step_s / 12.0 * (gain[..., :-1] - gain[..., 1:]))
+        step_s * (0.5 * (speed[..., 1:] + speed[..., :-1]) + step_s / 12.0 * (gain[..., :-1] - gain[..., 1:]))
     )
 
 
@@ -300,24 +349,26 @@ def _piece_exposure_s(curves: AirCurves, settled_k: Floats, tau_s: Floats, activ
 
 
 def _excess_series(
-    curves: AirCurves, settled_k: Floats, tau_s: Floats, activation: float
+    curves: AirCurves,
+    settled_k: Floats,
+    tau_s: Floats,
+    activation_j_mol: tuple[float, ...],
+    until_s: float,
 ) -> NDArray[np.float32]:
-    """H_k at the knots, by exact integration of a piecewise linear rate(U) L_k (−1/U)^k against exp(−ks/τ)."""
-    density = _laguerre_terms(settled_k, activation)
-    order = np.arange(1, SERIES_TERMS + 1)
-    decay_per_s = order / tau_s[:, None]
+    """H_k by exact integration of a piecewise linear rate(U) L_k (−1/U)^k against exp(−ks/τ), back from `until_s`."""
+    count = min(int(np.max(np.sum(curves.knot_s < until_s, axis=1))) + 2, curves.knot_s.shape[1])
+    density = np.stack([_laguerre_terms(settled_k[:count], q) for q in activation_j_mol])
+    decay_per_s = np.arange(1, SERIES_TERMS + 1) / tau_s[:, None]
     series = np.empty(density.shape, dtype=np.float32)
-    running = density[-1] / decay_per_s
-    series[-1] = running
-    step_s = np.diff(curves.knot_s, axis=1)
-    weights = None
+    running = density[:, -1] / decay_per_s
+    series[:, -1] = running
+    step_s = np.diff(curves.knot_s[:, :count], axis=1)
     changed = np.append(np.any(step_s[:, 1:] != step_s[:, :-1], axis=0), True)
-    for knot in range(step_s.shape[1] - 1, -1, -1):
+    for knot in range(count - 2, -1, -1):
         if changed[knot]:
-            weights = _decaying_weights(step_s[:, knot, None, None], decay_per_s)
-        at_begin, at_end, decay = weights
-        running = at_begin * density[knot] + at_end * density[knot + 1] + decay * running
-        series[knot] = running
+            at_begin, at_end, decay = _decaying_weights(step_s[:, knot, None, None], decay_per_s)
+        running = at_begin * density[:, knot] + at_end * density[:, knot + 1] + decay * running
+        series[:, knot] = running
     return series
 
 

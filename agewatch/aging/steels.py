@@ -68,3 +68,5 @@ class Spreads:
     needed_mpa: Floats
     """Of the needed rise: masking, and certificate values that the grade stands in for."""
     log_saturation: Floats
+    kind: Rows
+    """Coils of one kind share their saturation and all spreads."""

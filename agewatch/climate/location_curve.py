@@ -24,9 +24,7 @@ class AirCurve:
     """The piece that begins at this knot does not rest on readings."""
 
 
-def middle_of_sensors(
-    sensors: Sequence[tuple[Floats, Floats]], gap_s: float
-) -> tuple[Floats, Floats]:
+def middle_of_sensors(sensors: Sequence[tuple[Floats, Floats]], gap_s: float) -> tuple[Floats, Floats]:
     """Times and temperatures (°C) of a location from its sensors' believed readings.
 
     Parameters
@@ -56,8 +54,10 @@ def _between_readings(at_s: Floats, times_s: Floats, celsius: Floats, gap_s: flo
     after = np.clip(np.searchsorted(times_s, at_s, side="left"), 1, max(len(times_s) - 1, 1))
     if len(times_s) == 1:
         return np.where(at_s == times_s[0], celsius[0], np.nan)
-    in_gap = (times_s[after] - times_s[after - 1] > gap_s) & (at_s != times_s[after]) & (
-        at_s != times_s[after - 1]
+    in_gap = (
+        (times_s[after] - times_s[after - 1] > gap_s)
+        & (at_s != times_s[after])
+        & (at_s != times_s[after - 1])
     )
     said_c[in_gap] = np.nan
     return said_c

@@ -44,7 +44,9 @@ def plant_air(
     curves: list[AirCurve | None] = []
     last_s = []
     for name, location in settings.location.items():
-        read_s, read_c = middle_of_sensors([sensors[one] for one in location.sensors if one in sensors], gap_s)
+        read_s, read_c = middle_of_sensors(
+            [sensors[one] for one in location.sensors if one in sensors], gap_s
+        )
         last_s.append(read_s[-1] if len(read_s) else np.nan)
         if not len(read_s):
             curves.append(None)
@@ -70,14 +72,14 @@ def _believed_sensors(
 ) -> dict[str, tuple[Floats, Floats]]:
     past = readings.at_s <= at_s
     sensors = _by_name(
-        Coded(readings.sensor.codes[past], readings.sensor.labels), readings.at_s[past], readings.celsius[past]
+        Coded(readings.sensor.codes[past], readings.sensor.labels),
+        readings.at_s[past],
+        readings.celsius[past],
     )
     screening = settings.screening
     good = {}
     for name, (times_s, celsius) in sensors.items():
-        keep = believed(
-            screen(times_s, celsius, lowest_c=screening.lowest_c, highest_c=screening.highest_c)
-        )
+        keep = believed(screen(times_s, celsius, lowest_c=screening.lowest_c, highest_c=screening.highest_c))
         good[name] = times_s[keep], celsius[keep]
     return good
 
@@ -101,9 +103,7 @@ def _ahead(
 ) -> tuple[Floats, Floats]:
     """The supplied outlook as far as it goes, then what the location's own past lets expect."""
     normals = settings.outlook.monthly_normals_c
-    times_s, celsius = expected_air(
-        read_s, read_c, None if normals is None else np.array(normals), horizon_s
-    )
+    times_s, celsius = expected_air(read_s, read_c, None if normals is None else np.array(normals), horizon_s)
     if supplied is None:
         return times_s, celsius
     beyond = times_s > max(supplied[0][-1], read_s[-1])

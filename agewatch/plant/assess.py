@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 from typing import Any
 
@@ -9,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from agewatch.aging.assess import Stock, now, return_quantiles_s, return_risk
-from agewatch.aging.journey import Journey
+from agewatch.aging.journey import Journey, Legs
 from agewatch.aging.kinetics import DAY_S, HOUR_S, ZERO_C_K
 from agewatch.aging.settled import Rows, SettledField
 from agewatch.plant.air import PlantAir, plant_air
@@ -25,6 +26,8 @@ from agewatch.plant.steels import (
     coil_steels,
 )
 from agewatch.plant.verdicts import NO_PART, Facts, judge, unassessable
+
+_BATCH_COILS = 32_768
 
 MODEL = "agewatch-1"
 """Version of the model: changed whenever the same inputs would give other numbers."""
@@ -55,8 +58,7 @@ def assess(
     columns = _blank_columns(len(inventory))
     reasons = why_not
     if air is not None and len(rows):
-        ready = prepare(inventory.take(rows), air, settings, at_s)
-        own, own_reasons = _evaluate(ready, settings)
+        own, own_reasons = _in_batches(inventory.take(rows), air, settings, at_s)
         for name, values in own.items():
             columns[name][rows] = values
         reasons = _merged(why_not, rows, own_reasons)
@@ -85,11 +87,22 @@ def first_leg_s(inventory: Inventory, at_s: float) -> float:
 def prepare(inventory: Inventory, air: PlantAir, settings: Settings, at_s: float) -> Prepared:
     """Join legs, certificates and air of coils none of which is `unassessable`."""
     legs = coil_legs(inventory, settings, at_s)
-    field = SettledField.of(air.curves, activations_j_mol(settings), legs.tau_s)
+    return _joined(inventory, legs, _field(legs, air, settings), air, settings, at_s)
+
+
+def _field(legs: Legs, air: PlantAir, settings: Settings) -> SettledField:
+    return SettledField.of(air.curves, activations_j_mol(settings), legs.tau_s, float(legs.start_s.max()))
+
+
+def _joined(
+    inventory: Inventory, legs: Legs, field: SettledField, air: PlantAir, settings: Settings, at_s: float
+) -> Prepared:
     grade = inventory.grade.recode(tuple(settings.grade)).astype(np.intp)
     parts = [*settings.part.values(), NO_PART]
     part = inventory.part.recode(tuple(settings.part))
-    limit_pct = np.array([np.nan if each.ype_limit_pct is None else each.ype_limit_pct for each in parts])[part]
+    limit_pct = np.array([np.nan if each.ype_limit_pct is None else each.ype_limit_pct for each in parts])[
+        part
+    ]
 
     def journey(channel: Rows) -> Journey:
         return Journey.of(field, channel, legs, inventory.coil_temp_c + ZERO_C_K, air.horizon_s)
@@ -107,6 +120,24 @@ def prepare(inventory: Inventory, air: PlantAir, settings: Settings, at_s: float
         air.horizon_s,
     )
     return Prepared(inventory, stock, np.array([each.pull_risk for each in parts])[part])
+
+
+def _in_batches(
+    inventory: Inventory, air: PlantAir, settings: Settings, at_s: float
+) -> tuple[dict[str, NDArray[Any]], Coded]:
+    """Columns and reasons of coils that can be assessed: in batches that fit the caches, on all cores."""
+    legs = coil_legs(inventory, settings, at_s)
+    field = _field(legs, air, settings)
+
+    def evaluate(batch: Rows) -> tuple[dict[str, NDArray[Any]], Coded]:
+        own = legs.of_coils(int(batch[0]), int(batch[-1]) + 1)
+        return _evaluate(_joined(inventory.take(batch), own, field, air, settings, at_s), settings)
+
+    batches = np.array_split(np.arange(len(inventory)), -(-len(inventory) // _BATCH_COILS))
+    with ThreadPoolExecutor() as threads:
+        parts = list(threads.map(evaluate, batches))
+    columns = {name: np.concatenate([part[0][name] for part in parts]) for name in parts[0][0]}
+    return columns, Coded(np.concatenate([part[1].codes for part in parts]), parts[0][1].labels)
 
 
 def _evaluate(ready: Prepared, settings: Settings) -> tuple[dict[str, NDArray[Any]], Coded]:

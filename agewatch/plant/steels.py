@@ -77,22 +77,22 @@ def coil_steels(inventory: Inventory, settings: Settings, grade: Rows) -> Steels
 def coil_spreads(inventory: Inventory, settings: Settings, grade: Rows, limit_pct: Floats) -> Spreads:
     """Spreads of coils whose parts bear `limit_pct` (n_coils,)."""
     grades = [*settings.grade.values()]
-    slots = max(len(channels(each)) for each in grades)
-    log_tau = np.zeros((len(grades), slots))
+    log_tau = np.zeros((len(grades), max(len(channels(each)) for each in grades)))
     for row, each in enumerate(grades):
         own = [channel.tau_spread for channel in channels(each).values()] if each.aging else []
         log_tau[row, : len(own)] = own
     masking_mpa = np.array([each.masking_spread_mpa for each in grades])[grade]
+    needed_mpa = np.hypot(masking_mpa, _assumed_spread_mpa(inventory, grades, grade, limit_pct))
+    distinct, code = np.unique(needed_mpa, return_inverse=True)
     return Spreads(
         log_tau[grade],
-        np.hypot(masking_mpa, _assumed_spread_mpa(inventory, grades, grade, limit_pct)),
+        needed_mpa,
         np.array([each.rise_saturation_spread for each in grades])[grade],
+        grade * len(distinct) + code,
     )
 
 
-def _assumed_spread_mpa(
-    inventory: Inventory, grades: list[Grade], grade: Rows, limit_pct: Floats
-) -> Floats:
+def _assumed_spread_mpa(inventory: Inventory, grades: list[Grade], grade: Rows, limit_pct: Floats) -> Floats:
     """Spread of the rise that the limit needs, from the tensile values that the grade stands in for, MPa.
 
     First order, about the grade's own values, so that coils with the same gaps share it.
@@ -105,7 +105,8 @@ def _assumed_spread_mpa(
         if by.any():
             shifted = [value * np.exp(by) if at == place else value for at, value in enumerate(medians)]
             needed = [
-                FlowCurve.of_certificate(*values).effective_rise_mpa(limit_pct) for values in (medians, shifted)
+                FlowCurve.of_certificate(*values).effective_rise_mpa(limit_pct)
+                for values in (medians, shifted)
             ]
             variance += np.nan_to_num((needed[1] - needed[0]) ** 2, nan=0.0)
     return np.sqrt(variance)
@@ -132,9 +133,7 @@ def given_or_grade(values: Floats, grades: list[Grade], grade: Rows, name: str) 
     return np.where(np.isnan(values), of_grade[grade], values)
 
 
-def _tensile_values(
-    inventory: Inventory, grades: list[Grade], grade: Rows
-) -> tuple[Floats, Floats, Floats]:
+def _tensile_values(inventory: Inventory, grades: list[Grade], grade: Rows) -> tuple[Floats, Floats, Floats]:
     """Rp0.2, Rm and n; a certificate value that contradicts the grade's is dropped with its fellows."""
     own = [given_or_grade(getattr(inventory, name), grades, grade, name) for name in CERTIFICATE]
     of_grade = [np.array([getattr(each, name) for each in grades])[grade] for name in CERTIFICATE]

@@ -39,7 +39,11 @@ def judge(facts: Facts) -> tuple[NDArray[np.int8], Coded]:
     planned = ~np.isnan(facts.press_s)
     risk = np.nan_to_num(facts.return_risk, nan=0.0)
     cases = [
-        (facts.lab_ype_pct > facts.limit_pct, Verdict.HOLD, "a lab test found a plateau beyond the part's limit"),
+        (
+            facts.lab_ype_pct > facts.limit_pct,
+            Verdict.HOLD,
+            "a lab test found a plateau beyond the part's limit",
+        ),
         (facts.return_p50_s <= at_s, Verdict.HOLD, "the plateau has returned by the P50 estimate"),
         (
             planned & (risk >= facts.pull_risk),
@@ -76,9 +80,7 @@ def judge(facts: Facts) -> tuple[NDArray[np.int8], Coded]:
     return verdicts, Coded(first.astype(np.int32), tuple(case[2] for case in cases))
 
 
-def unassessable(
-    inventory: Inventory, settings: Settings, covered: NDArray[np.bool_], at_s: float
-) -> Coded:
+def unassessable(inventory: Inventory, settings: Settings, covered: NDArray[np.bool_], at_s: float) -> Coded:
     """Why coils cannot be assessed; code -1: they can.
 
     Parameters
