@@ -31,6 +31,8 @@ from agewatch.errors import StoreError
 DAY = 86_400.0
 NEW = Alarm.at_rest_for(AlarmKind.RETURN_BEFORE_PRESS, "C-1")
 SLOW = Timing(on_delay_s=60.0, off_delay_s=1800.0)
+OVER_ON_S, OVER_OFF_S = 60.001, 1800.001
+"""The delays and a millisecond more: differences of floating times are rounded."""
 
 
 def seen(
@@ -175,7 +177,7 @@ def test_a_clock_set_back_never_raises_early_and_still_raises(back_s: float, wai
     behind_s = start_s + wait_s - back_s
     alarm, effects = run(alarm, [seen(behind_s), seen(behind_s + 59.0 - wait_s)], SLOW)
     assert effects == []
-    alarm, _ = run(alarm, [seen(behind_s + 60.0), seen(start_s + 60.0)], SLOW)
+    alarm, _ = run(alarm, [seen(behind_s + OVER_ON_S), seen(start_s + 60.0)], SLOW)
     assert alarm.state is AlarmState.UNACKNOWLEDGED
 
 
@@ -190,7 +192,7 @@ def test_a_clock_set_back_never_makes_an_alarm_vanish(back_s: float) -> None:
         assert (kept.state, effects) == (AlarmState.UNACKNOWLEDGED, ())
     alarm, _ = run(alarm, [seen(start_s + 70.0, False), seen(behind_s, False)], SLOW)
     assert alarm.state is AlarmState.UNACKNOWLEDGED
-    alarm, _ = run(alarm, [seen(behind_s + 1800.0, False), seen(start_s + 70.0 + 1800.0, False)], SLOW)
+    alarm, _ = run(alarm, [seen(behind_s + OVER_OFF_S, False), seen(start_s + 70.0 + 1800.0, False)], SLOW)
     assert alarm.state is AlarmState.RETURNED_UNACKNOWLEDGED
 
 
@@ -210,7 +212,7 @@ def test_what_holds_past_its_on_delay_is_raised_whatever_came_before(
     """From any history, with any clock: a condition seen over the on-delay ends in a standing alarm."""
     alarm, _ = run(NEW, history, SLOW)
     times = [start_s, *(start_s + sum(steps[: count + 1]) for count in range(len(steps)))]
-    alarm, _ = run(alarm, [seen(at_s) for at_s in (*times, max(times[-1], start_s + 60.0))], SLOW)
+    alarm, _ = run(alarm, [seen(at_s) for at_s in (*times, max(times[-1], start_s + OVER_ON_S))], SLOW)
     assert alarm.standing
 
 
@@ -220,7 +222,7 @@ def test_what_is_gone_past_its_off_delay_is_cleared_whatever_came_before(
 ) -> None:
     """From any history, with any clock: a condition gone over the off-delay ends a standing alarm."""
     alarm, _ = run(NEW, history, SLOW)
-    alarm, _ = run(alarm, [seen(start_s, False), seen(start_s + 1800.0, False)], SLOW)
+    alarm, _ = run(alarm, [seen(start_s, False), seen(start_s + OVER_OFF_S, False)], SLOW)
     assert not alarm.standing
     assert not alarm.active
 
