@@ -15,7 +15,7 @@ REJECTS_DEADBAND = 0.5
 
 
 @dataclass(frozen=True, slots=True)
-class SensorHealth:
+class Sensor:
     """A sensor, its location, and its latest reading not in the future [s since 1970]; None: never one."""
 
     name: str
@@ -24,7 +24,7 @@ class SensorHealth:
 
 
 @dataclass(frozen=True, slots=True)
-class FeedHealth:
+class Feed:
     """A feed: when it last brought news, how long it may be quiet, and why it cannot be read ("": it can)."""
 
     name: str
@@ -34,7 +34,7 @@ class FeedHealth:
 
 
 @dataclass(frozen=True, slots=True)
-class EndpointHealth:
+class Receiver:
     """An endpoint: since when no message gets through, whether it is gone for good, messages set aside."""
 
     name: str
@@ -59,7 +59,7 @@ def system_condition(
     return Condition(kind, subject, Observed(at_s, active, RATIONALISATION[kind].priority, location, detail))
 
 
-def silent_sensors(sensors: Iterable[SensorHealth], at_s: float, silent_after_s: float) -> list[Condition]:
+def silent_sensors(sensors: Iterable[Sensor], at_s: float, silent_after_s: float) -> list[Condition]:
     """sensor-silent for every sensor: active when its last reading is more than `silent_after_s` ago."""
     return [
         system_condition(
@@ -76,7 +76,7 @@ def silent_sensors(sensors: Iterable[SensorHealth], at_s: float, silent_after_s:
 
 
 def uncovered_locations(
-    sensors: Iterable[SensorHealth], coils: Mapping[str, int], at_s: float, silent_after_s: float
+    sensors: Iterable[Sensor], coils: Mapping[str, int], at_s: float, silent_after_s: float
 ) -> list[Condition]:
     """location-uncovered for every location in `coils` (location → stored coils).
 
@@ -102,7 +102,7 @@ def uncovered_locations(
     ]
 
 
-def stale_feeds(feeds: Iterable[FeedHealth], at_s: float) -> list[Condition]:
+def stale_feeds(feeds: Iterable[Feed], at_s: float) -> list[Condition]:
     """feed-stale for every feed: active when it cannot be read, or has been quiet for longer than it may."""
     return [
         system_condition(
@@ -139,9 +139,7 @@ def high_rejects(
     return conditions
 
 
-def failing_deliveries(
-    endpoints: Iterable[EndpointHealth], at_s: float, failing_after_s: float
-) -> list[Condition]:
+def failing_deliveries(endpoints: Iterable[Receiver], at_s: float, failing_after_s: float) -> list[Condition]:
     """delivery-failing for every endpoint.
 
     Active when it is disabled, when messages to it are set aside, or when none has got through for
@@ -173,7 +171,7 @@ def _since(what: str, last_s: float | None, at_s: float) -> str:
     return f"{what}: {max(0.0, at_s - last_s) / 3600:.1f} h ago"
 
 
-def _delivery_reason(endpoint: EndpointHealth) -> str:
+def _delivery_reason(endpoint: Receiver) -> str:
     if endpoint.disabled:
         return "the receiver has said that it is gone for good (410); nothing is sent to it any more"
     if endpoint.set_aside:

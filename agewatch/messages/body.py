@@ -23,8 +23,10 @@ BODY_LIMIT = 20_000
 """Every body is shorter than this many bytes."""
 
 _ID_DIGITS = 32
+_NO_ID = "msg_" + "-" * _ID_DIGITS
 _TEXT_LIMIT = 1000
 _CUT_TEXT = 80
+_LONGEST_ESCAPE = 12
 """Longer texts than any plant writes are cut, so that one entry always fits."""
 
 
@@ -86,17 +88,18 @@ def heartbeat_body(site: str, at_s: float, values: Mapping[str, object], endpoin
 
 
 def _body(news: News, data: Entry, endpoint: str, cause: str) -> Body:
-    content = _json(_document(news, "", data))
+    content = _json(_document(news, data))
     digest = hashlib.sha256(_json([endpoint, cause, content]).encode("ascii")).hexdigest()
     message_id = f"msg_{digest[:_ID_DIGITS]}"
-    return Body(message_id, _json(_document(news, message_id, data)))
+    return Body(message_id, content.replace(_NO_ID, message_id, 1))
 
 
-def _document(news: News, message_id: str, data: Entry) -> Entry:
+def _document(news: News, data: Entry) -> Entry:
+    """The event, with `_NO_ID` before all text of the plant where its id will stand."""
     subject = {"subject": _bounded(inert(news.location))} if news.location else {}
     return {
         "specversion": "1.0",
-        "id": message_id,
+        "id": _NO_ID,
         "source": f"/agewatch/{quote(_bounded(news.site), safe='', errors='replace')}",
         "type": news.type,
         **subject,
@@ -121,7 +124,7 @@ def _listing(news: News, entries: Sequence[Entry], part: int, parts: int) -> Ent
 def _chunks(news: News) -> list[list[Entry]]:
     """The entries in as few lists as fit, in order."""
     widest = _listing(news, (), len(news.entries), len(news.entries))
-    envelope = len(_json(_document(news, "msg_" + "0" * _ID_DIGITS, widest)))
+    envelope = len(_json(_document(news, widest)))
     chunks: list[list[Entry]] = []
     size = BODY_LIMIT
     for entry in map(_bounded_entry, news.entries):
@@ -139,8 +142,8 @@ def _bounded_entry(entry: Entry) -> Entry:
 
 
 def _bounded(text: str) -> str:
-    return text if len(_json(text)) <= _TEXT_LIMIT else text[:_CUT_TEXT] + "…"
+    fits = len(text) * _LONGEST_ESCAPE <= _TEXT_LIMIT or len(_json(text)) <= _TEXT_LIMIT
+    return text if fits else text[:_CUT_TEXT] + "…"
 
 
-def _json(value: object) -> str:
-    return json.dumps(value, ensure_ascii=True, allow_nan=False, separators=(",", ":"))
+_json = json.JSONEncoder(ensure_ascii=True, allow_nan=False, separators=(",", ":")).encode

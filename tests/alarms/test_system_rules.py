@@ -7,9 +7,9 @@ import pytest
 from agewatch.alarms import AlarmKind, Condition, Timing, advance_all
 from agewatch.alarms.rationalisation import RATIONALISATION
 from agewatch.alarms.system_rules import (
-    EndpointHealth,
-    FeedHealth,
-    SensorHealth,
+    Feed,
+    Receiver,
+    Sensor,
     failing_deliveries,
     high_rejects,
     silent_sensors,
@@ -29,10 +29,10 @@ def active(conditions: list[Condition]) -> dict[str, bool]:
 def test_a_sensor_is_silent_after_its_time_or_if_it_never_spoke() -> None:
     """Silence is counted from the last reading; a sensor that never sent one is silent from the start."""
     sensors = [
-        SensorHealth("T1", "BAY-1", NOW - 3 * HOUR),
-        SensorHealth("T2", "BAY-1", NOW - 3 * HOUR - 1),
-        SensorHealth("T3", "BAY-2", None),
-        SensorHealth("T4", "BAY-2", NOW + HOUR),
+        Sensor("T1", "BAY-1", NOW - 3 * HOUR),
+        Sensor("T2", "BAY-1", NOW - 3 * HOUR - 1),
+        Sensor("T3", "BAY-2", None),
+        Sensor("T4", "BAY-2", NOW + HOUR),
     ]
     conditions = silent_sensors(sensors, NOW, 3 * HOUR)
     assert active(conditions) == {"T1": False, "T2": True, "T3": True, "T4": False}
@@ -48,11 +48,11 @@ def test_a_sensor_is_silent_after_its_time_or_if_it_never_spoke() -> None:
 def test_a_location_is_uncovered_when_all_its_sensors_are_silent_and_coils_lie_there() -> None:
     """One speaking sensor covers its location; an empty location needs none."""
     sensors = [
-        SensorHealth("T1", "ONE-SPEAKS", NOW - 9 * HOUR),
-        SensorHealth("T2", "ONE-SPEAKS", NOW - 1 * HOUR),
-        SensorHealth("T3", "ALL-SILENT", NOW - 9 * HOUR),
-        SensorHealth("T4", "NEVER", None),
-        SensorHealth("T5", "EMPTY", None),
+        Sensor("T1", "ONE-SPEAKS", NOW - 9 * HOUR),
+        Sensor("T2", "ONE-SPEAKS", NOW - 1 * HOUR),
+        Sensor("T3", "ALL-SILENT", NOW - 9 * HOUR),
+        Sensor("T4", "NEVER", None),
+        Sensor("T5", "EMPTY", None),
     ]
     coils = {"ONE-SPEAKS": 5, "ALL-SILENT": 5, "NEVER": 5, "EMPTY": 0, "WITHOUT": 1}
     assert active(uncovered_locations(sensors, coils, NOW, 3 * HOUR)) == {
@@ -67,11 +67,11 @@ def test_a_location_is_uncovered_when_all_its_sensors_are_silent_and_coils_lie_t
 def test_a_feed_is_stale_when_quiet_too_long_or_unreadable() -> None:
     """A limit makes quiet feeds stale; without one only trouble counts, and trouble is the reason given."""
     feeds = [
-        FeedHealth("quiet", NOW - 2 * HOUR, HOUR),
-        FeedHealth("lively", NOW - 0.5 * HOUR, HOUR),
-        FeedHealth("no-limit", NOW - 900 * HOUR, None),
-        FeedHealth("never", None, HOUR),
-        FeedHealth("broken", NOW, None, "coils.csv: no such file"),
+        Feed("quiet", NOW - 2 * HOUR, HOUR),
+        Feed("lively", NOW - 0.5 * HOUR, HOUR),
+        Feed("no-limit", NOW - 900 * HOUR, None),
+        Feed("never", None, HOUR),
+        Feed("broken", NOW, None, "coils.csv: no such file"),
     ]
     conditions = stale_feeds(feeds, NOW)
     assert active(conditions) == {
@@ -100,11 +100,11 @@ def test_rejects_have_a_limit_and_a_deadband(limit: int, count: int, fresh: bool
 def test_an_endpoint_fails_when_gone_or_set_aside_or_silent_for_long() -> None:
     """Short trouble is no alarm; long trouble, a 410 and messages set aside are, each with its reason."""
     endpoints = [
-        EndpointHealth("well", None, disabled=False, set_aside=0),
-        EndpointHealth("brief", NOW - 60.0, disabled=False, set_aside=0, last_error="no answer within 15 s"),
-        EndpointHealth("long", NOW - HOUR, disabled=False, set_aside=0, last_error="no answer within 15 s"),
-        EndpointHealth("gone", None, disabled=True, set_aside=0),
-        EndpointHealth("refuses", None, disabled=False, set_aside=2, last_error="it answered 422"),
+        Receiver("well", None, disabled=False, set_aside=0),
+        Receiver("brief", NOW - 60.0, disabled=False, set_aside=0, last_error="no answer within 15 s"),
+        Receiver("long", NOW - HOUR, disabled=False, set_aside=0, last_error="no answer within 15 s"),
+        Receiver("gone", None, disabled=True, set_aside=0),
+        Receiver("refuses", None, disabled=False, set_aside=2, last_error="it answered 422"),
     ]
     conditions = failing_deliveries(endpoints, NOW, HOUR)
     assert active(conditions) == {"well": False, "brief": False, "long": True, "gone": True, "refuses": True}
