@@ -34,7 +34,7 @@ class AirCurves:
     """(n_locations, n_buckets): the piece in which each bucket of time begins."""
 
     def __post_init__(self) -> None:
-        n_locations, n_knots = self.knot_s.shape
+        n_knots = self.knot_s.shape[1]
         begin_s, bucket_s = self._buckets()
         edge_s = begin_s + bucket_s * np.arange(_BUCKETS_PER_KNOT * n_knots + 1)
         guide = np.stack([np.searchsorted(row, edge_s, side="right") for row in self.knot_s]) - 1
@@ -57,7 +57,7 @@ class AirCurves:
         while True:
             passed = (flat_s.take(base + piece) <= at_s) & (piece < n_knots - 2)
             if not passed.any():
-                return piece
+                return np.asarray(piece)
             piece += passed
 
     def at(self, location: NDArray[np.intp], at_s: Floats) -> Floats:

@@ -15,6 +15,7 @@ with ``H_k(t_0) = ∫ rate(U) L_k(q/U) (−1/U)^k exp(−k (t − t_0)/τ) dt``,
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.lib.stride_tricks import sliding_window_view
@@ -168,7 +169,7 @@ class SettledField:
         order = np.argsort(kind, kind="stable")
         bounds = np.flatnonzero(np.diff(kind[order], prepend=-1, append=-1))
         at_s = np.empty(len(channel))
-        for begin, end in zip(bounds[:-1], bounds[1:], strict=True):
+        for begin, end in pairwise(bounds):
             rows = order[begin:end]
             place, tau_class = divmod(int(kind[rows[0]]), n_classes)
             activation, location = divmod(place, n_locations)

@@ -66,4 +66,4 @@ def _daily_profile(hours_s: Floats, hours_c: Floats) -> Floats:
     if (count == 0).any():
         return np.zeros(24)
     mean_c = np.bincount(hour, hours_c, minlength=24) / count
-    return mean_c - mean_c.mean()
+    return np.asarray(mean_c - mean_c.mean())

@@ -86,7 +86,7 @@ def _believed_sensors(
 
 def _by_name(names: Coded, at_s: Floats, celsius: Floats) -> dict[str, tuple[Floats, Floats]]:
     """Rows by name; they come ordered by (name, time)."""
-    starts = np.flatnonzero(np.append(True, names.codes[1:] != names.codes[:-1])) if len(at_s) else []
+    starts = np.flatnonzero(np.diff(names.codes, prepend=-2))
     ends = [*starts[1:], len(at_s)]
     return {
         names.labels[names.codes[begin]]: (at_s[begin:end], celsius[begin:end])

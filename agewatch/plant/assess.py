@@ -157,7 +157,7 @@ def _evaluate(ready: Prepared, settings: Settings) -> tuple[dict[str, NDArray[An
         pull_risk=ready.pull_risk,
         limit_pct=stock.limit_pct,
         lab_ype_pct=ready.inventory.lab_ype_pct,
-        ages=np.isfinite(stock.steels.tau_s).any(axis=1),
+        ages=np.asarray(np.isfinite(stock.steels.tau_s).any(axis=1)),
     )
     verdict, reason = judge(facts)
     return {

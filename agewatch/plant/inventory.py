@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass, fields
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -91,7 +92,7 @@ class Inventory:
         place = np.full(len(self), -1, dtype=np.int32)
         place[rows] = np.arange(len(rows), dtype=np.int32)
         moves = place[self.move_coil] >= 0
-        columns = {}
+        columns: dict[str, Any] = {}
         for field in fields(self):
             column = getattr(self, field.name)
             if field.name == "move_coil":

@@ -26,7 +26,8 @@ _WORDS = {
 
 def channels(grade: Grade) -> dict[str, Channel]:
     """The grade's channels, the main one first; one that does not age counts its equivalent age by carbon's."""
-    return dict(grade.channel) or {"carbon": Channel(tau_days=np.inf)}
+    given: dict[str, Channel] = {solute: channel for solute, channel in grade.channel.items()}  # noqa: C416
+    return given or {"carbon": Channel(tau_days=1.0)}
 
 
 def activations_j_mol(settings: Settings) -> tuple[float, ...]:
@@ -123,8 +124,7 @@ def assumed_values(inventory: Inventory) -> Coded:
         ", ".join(_WORDS[name] for place, name in enumerate(names) if bit >> place & 1) for bit in present
     )
     none = np.flatnonzero(present == 0)
-    codes = np.where(np.isin(codes, none), -1, codes).astype(np.int32)
-    return Coded(codes, labels)
+    return Coded(np.where(np.isin(codes, none), -1, codes).astype(np.int32), labels)
 
 
 def given_or_grade(values: Floats, grades: list[Grade], grade: Rows, name: str) -> Floats:

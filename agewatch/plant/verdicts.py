@@ -38,6 +38,7 @@ def judge(facts: Facts) -> tuple[NDArray[np.int8], Coded]:
     at_s, ahead_s = facts.at_s, facts.return_p10_s - facts.at_s
     planned = ~np.isnan(facts.press_s)
     risk = np.nan_to_num(facts.return_risk, nan=0.0)
+    days = f"{facts.pull_horizon_s / DAY_S:.0f} days", f"{2 * facts.pull_horizon_s / DAY_S:.0f} days"
     cases = [
         (
             facts.lab_ype_pct > facts.limit_pct,
@@ -53,7 +54,7 @@ def judge(facts: Facts) -> tuple[NDArray[np.int8], Coded]:
         (
             ~planned & (ahead_s <= facts.pull_horizon_s),
             Verdict.PULL,
-            f"no pressing is planned and the plateau may return within {facts.pull_horizon_s / DAY_S:.0f} days",
+            f"no pressing is planned and the plateau may return within {days[0]}",
         ),
         (
             planned & (risk >= facts.pull_risk / 2),
@@ -63,7 +64,7 @@ def judge(facts: Facts) -> tuple[NDArray[np.int8], Coded]:
         (
             ~planned & (ahead_s <= 2 * facts.pull_horizon_s),
             Verdict.WATCH,
-            f"no pressing is planned and the plateau may return within {2 * facts.pull_horizon_s / DAY_S:.0f} days",
+            f"no pressing is planned and the plateau may return within {days[1]}",
         ),
         (~facts.ages, Verdict.CLEAR, "the grade does not age"),
         (np.isnan(facts.limit_pct), Verdict.CLEAR, "the part bears any plateau"),
