@@ -7,8 +7,6 @@ from typing import overload
 
 import numpy as np
 
-JSON = None | bool | int | float | str | list["JSON"] | dict[str, "JSON"]
-
 
 @overload
 def to_ms(at_s: float) -> int: ...

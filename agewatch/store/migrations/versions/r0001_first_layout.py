@@ -118,6 +118,7 @@ def upgrade() -> None:
         sa.Column("column", sa.String(), nullable=False),
         sa.Column("reason", sa.Text(), nullable=False),
         sa.Column("raw", sa.Text(), nullable=False),
+        sa.Column("header", sa.Text(), nullable=False),
         sa.Column("received_ms", sa.BigInteger(), nullable=False),
         sa.Column("resubmitted_ms", sa.BigInteger()),
         sa.PrimaryKeyConstraint("reject_id", name=op.f("pk_reject")),
