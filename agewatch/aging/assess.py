@@ -8,7 +8,7 @@ import numpy as np
 
 from agewatch.aging.journey import Journey
 from agewatch.aging.kinetics import Floats
-from agewatch.aging.returning import return_s
+from agewatch.aging.returning import end_locking, return_s
 from agewatch.aging.risk import Needed, log_locking_levels, return_probability
 from agewatch.aging.settled import Rows
 from agewatch.aging.steels import Spreads, Steels
@@ -78,6 +78,7 @@ def return_quantiles_s(stock: Stock, state: Now) -> Floats:
     count = len(stock.limit_pct)
     everyone = np.arange(count)
     needed = _needed(stock)
+    ends = end_locking(stock.journey, stock.steels)
     noise, shift = noise_of(stock, everyone, np.full(count, stock.at_s), state.exposure_s)
     varies = np.flatnonzero(_noise_varies(stock))
     returns_s = np.empty((len(PROBABILITIES), count))
@@ -86,14 +87,16 @@ def return_quantiles_s(stock: Stock, state: Now) -> Floats:
         level = log_locking_levels(needed, noise, probability)
         returns_s[place] = returns_s[place - 1]
         other = np.flatnonzero(level != before)  # without spreads the quantiles are one
-        returns_s[place, other] = return_s(stock.journey, stock.steels, other, np.exp(level - shift)[other])
+        returns_s[place, other] = return_s(
+            stock.journey, stock.steels, ends, other, np.exp(level - shift)[other]
+        )
         before = level
         for _ in range(_PASSES if len(varies) else 0):
             at_s = returns_s[place, varies]
             at_s = np.where(np.isnan(at_s), stock.horizon_s, at_s)
             then, moved = noise_of(stock, varies, at_s, _exposure_at(stock.journey, varies, at_s))
             refined = np.exp(log_locking_levels(needed.take(varies), then, probability) - moved)
-            returns_s[place, varies] = return_s(stock.journey, stock.steels, varies, refined)
+            returns_s[place, varies] = return_s(stock.journey, stock.steels, ends, varies, refined)
     return returns_s
 
 
@@ -143,6 +146,8 @@ def noise_of(stock: Stock, coil: Rows, at_s: Floats, exposure_s: Floats) -> tupl
     raising the activation energies by their spread; the mean of a sum of lognormals gives
     ``½ (Σ w v − Σ w² v)``, ``v = (m σ_τ)²``.
     """
+    if not (stock.spreads.log_tau.any() or stock.ahead.spread.any() or stock.raised is not None):
+        return np.zeros(len(coil)), np.zeros(len(coil))
     steels = stock.steels.take(coil)
     with np.errstate(divide="ignore", invalid="ignore"):
         terms = (exposure_s / steels.tau_s) ** steels.exponent

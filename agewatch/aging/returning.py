@@ -16,13 +16,20 @@ _NEWTON_REACH_S = 300.0
 _MOST_STEPS = 60
 
 
-def return_s(journey: Journey, steels: Steels, coil: Rows, locking: Floats) -> Floats:
+def end_locking(journey: Journey, steels: Steels) -> Floats:
+    """g where each piece of the journeys ends, (n_pieces,): what `return_s` looks pieces up by."""
+    return _locking(steels, journey.pieces.coil, journey.end_exposure_s)
+
+
+def return_s(journey: Journey, steels: Steels, ends: Floats, coil: Rows, locking: Floats) -> Floats:
     """When coils reach a locking exponent, seconds, (n,); NaN: not before the horizon.
 
     Parameters
     ----------
     steels
         One row per coil of the journey.
+    ends
+        `end_locking` of the journey.
     coil
         Rows into the coils of `journey`; a coil may stand in it several times, with different `locking`.
     locking
@@ -34,22 +41,20 @@ def return_s(journey: Journey, steels: Steels, coil: Rows, locking: Floats) -> F
     runs on ``g^(1/m)``, which for one channel is straight in equivalent age, kept inside a shrinking bracket.
     """
     reached_s = np.full(len(coil), np.nan)
-    piece = _piece_of_return(journey, steels, coil, locking)
+    piece = _piece_of_return(journey, ends, coil, locking)
     rows = np.flatnonzero(piece >= 0)
     if len(rows):
         reached_s[rows] = _solve(journey, steels, piece[rows], locking[rows])
     return reached_s
 
 
-def _piece_of_return(journey: Journey, steels: Steels, coil: Rows, locking: Floats) -> Rows:
+def _piece_of_return(journey: Journey, ends: Floats, coil: Rows, locking: Floats) -> Rows:
     """The first piece at whose end g is reached, (n,); -1: none."""
-    of_piece = journey.pieces.coil
-    end_locking = locking_exponent(journey.end_exposure_s, steels.tau_s[of_piece], steels.exponent[of_piece])
-    count = np.diff(np.append(journey.first_piece, len(of_piece)))[coil]
+    count = np.diff(np.append(journey.first_piece, len(ends)))[coil]
     found = np.full(len(coil), -1, dtype=np.intp)
     for step in range(int(count.max(initial=0)) - 1, -1, -1):
         piece = journey.first_piece[coil] + np.minimum(step, count - 1)
-        found = np.where(end_locking[piece] >= locking, piece, found)
+        found = np.where(ends[piece] >= locking, piece, found)
     return found
 
 
@@ -84,8 +89,8 @@ def _guess_s(journey: Journey, steels: Steels, piece: Rows, goal: Floats, power:
     """Near the answer for one channel, where the straightened g is equivalent age over τ; else between the ends."""
     pieces = journey.pieces.take(piece)
     coil = pieces.coil
-    begin = _straight(steels, coil, journey.start_exposure_s[piece]) ** power
-    end = _straight(steels, coil, journey.end_exposure_s[piece]) ** power
+    begin = _locking(steels, coil, journey.start_exposure_s[piece]) ** power
+    end = _locking(steels, coil, journey.end_exposure_s[piece]) ** power
     share = np.clip((goal - begin) / (end - begin), 0.0, 1.0)
     guess_s = pieces.start_s + (pieces.end_s - pieces.start_s) * share
     single = np.flatnonzero((np.isfinite(steels.tau_s[coil]).sum(axis=1) == 1) & ~pieces.far)
@@ -98,7 +103,7 @@ def _guess_s(journey: Journey, steels: Steels, piece: Rows, goal: Floats, power:
     return guess_s
 
 
-def _straight(steels: Steels, coil: Rows, exposure_s: Floats) -> Floats:
+def _locking(steels: Steels, coil: Rows, exposure_s: Floats) -> Floats:
     return locking_exponent(exposure_s, steels.tau_s[coil], steels.exponent[coil])
 
 

@@ -121,18 +121,24 @@ class SettledField:
         """U at `at_s`, K, (n,)."""
         return self._place(standing, at_s).settled_k
 
-    def settled_and_air_k(self, standing: Standing, at_s: Floats) -> tuple[Floats, Floats]:
-        """U and the air, K, at m times of each coil, (n, m)."""
+    def settled(self, channel: Rows, standing: Standing, at_s: Floats) -> tuple[Floats, Floats]:
+        """U (K) and what a settled coil has gathered since the curve began (s), at `at_s`, (n,); `channel` (n,)."""
         place = self._place(standing, at_s)
-        return place.settled_k, place.settled_k + place.slope * standing.tau_s[:, None]
+        return place.settled_k, self._settled_exposure_s(channel, place)
 
-    def at_knots(self, standing: Standing, knot: Rows) -> tuple[Floats, Floats, Floats]:
-        """Time (s), U and air (K) at knots (n, m) of each coil's location; knots past the last are the last."""
+    def settled_at_knots(
+        self, channel: Rows, standing: Standing, knot: Rows
+    ) -> tuple[Floats, Floats, Floats]:
+        """Time (s), U (K) and what a settled coil has gathered (s) at knots (n, m); knots past the last are the last."""
         n_locations, n_knots = self.curves.knot_s.shape
         location, knot = standing.location[:, None], np.minimum(knot, n_knots - 1)
-        at = location * n_knots + knot
-        settled_k = _between_classes(self.settled_k, knot * n_locations + location, standing)
-        return self.curves.knot_s.reshape(-1).take(at), settled_k, self.curves.air_k.reshape(-1).take(at)
+        row = knot * n_locations + location
+        gathered_row = row + channel[:, None] * (n_knots * n_locations)
+        return (
+            self.curves.knot_s.reshape(-1).take(location * n_knots + knot),
+            _between_classes(self.settled_k, row, standing),
+            _between_classes(self.exposure_s, gathered_row, standing),
+        )
 
     def moment(
         self, channel: Rows, standing: Standing, at_s: Floats, excess_k: Floats
@@ -320,22 +326,13 @@ def _summed(pieces_s: list[Floats]) -> Floats:
     return total_s
 
 
-def path_exposure_s(
-    temperature_k: Floats, slope_k_s: Floats, at_s: Floats, activation_j_mol: Floats
-) -> Floats:
-    """∫ rate along paths given by temperatures and slopes at nodes of the last axis, s.
+def _corrected_steps_s(speed: Floats, gain: Floats, step_s: Floats) -> Floats:
+    """∫ rate over each step of the last axis from its values and time derivatives at the nodes.
 
     Notes
     -----
     The trapezoidal rule with the end correction of Euler and Maclaurin: its error is of fifth order in the step.
     """
-    speed = rate(temperature_k, activation_j_mol)
-    gain = speed * rate_slope(temperature_k, activation_j_mol) * slope_k_s
-    return np.asarray(np.sum(_corrected_steps_s(speed, gain, np.diff(at_s, axis=-1)), axis=-1))
-
-
-def _corrected_steps_s(speed: Floats, gain: Floats, step_s: Floats) -> Floats:
-    """∫ rate over each step of the last axis from its values and time derivatives at the nodes."""
     return np.asarray(
         step_s * (0.5 * (speed[..., 1:] + speed[..., :-1]) + step_s / 12.0 * (gain[..., :-1] - gain[..., 1:]))
     )
