@@ -6,56 +6,40 @@ line that names file, key and what is allowed.
 
 from __future__ import annotations
 
-import re
 from datetime import timedelta
 from typing import Annotated, Literal, Self
-from urllib.parse import urlsplit
-from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
 
-from pydantic import AwareDatetime, BaseModel, BeforeValidator, ConfigDict, Field, model_validator
+from pydantic import AwareDatetime, BaseModel, ConfigDict, Field, model_validator
 
+from agewatch.plant.contradictions import Contradiction, ContradictionError, contradictions
+from agewatch.plant.nearest import unknown
+from agewatch.plant.setting_values import (
+    Duration,
+    Encoding,
+    Interval,
+    MessageType,
+    Name,
+    NotNegative,
+    Number,
+    Positive,
+    ReceiverUrl,
+    Share,
+    StoreUrl,
+    Time,
+    TimeFormat,
+    TimeZone,
+)
 from agewatch.plant.tables import TABLES
-
-_DURATION = re.compile(r"\s*(\d+(?:\.\d+)?)\s*(s|min|h|d)\s*")
-_UNIT_S = {"s": 1.0, "min": 60.0, "h": 3600.0, "d": 86400.0}
-
-
-def _duration(value: object) -> object:
-    if isinstance(value, timedelta):
-        return value
-    match = _DURATION.fullmatch(value) if isinstance(value, str) else None
-    if match is None:
-        raise ValueError('allowed is a number and a unit in quotes: "30 s", "5 min", "24 h" or "14 d"')
-    return timedelta(seconds=float(match[1]) * _UNIT_S[match[2]])
-
-
-def _zone(value: object) -> object:
-    if not isinstance(value, str):
-        raise ValueError('allowed is the name of a time zone in quotes, for example "Europe/Prague" or "UTC"')
-    try:
-        ZoneInfo(value)
-    except (ZoneInfoNotFoundError, ValueError):
-        raise ValueError(
-            f'no time zone is named "{value}"; allowed is a name such as "Europe/Prague" or "UTC"'
-        ) from None
-    return value
-
-
-Duration = Annotated[timedelta, BeforeValidator(_duration)]
-TimeZone = Annotated[str, BeforeValidator(_zone)]
-Positive = Annotated[float, Field(gt=0, allow_inf_nan=False)]
-NotNegative = Annotated[float, Field(ge=0, allow_inf_nan=False)]
-Share = Annotated[float, Field(ge=0, le=1)]
 
 
 class _Section(BaseModel):
-    model_config = ConfigDict(extra="forbid", frozen=True)
+    model_config = ConfigDict(extra="forbid", frozen=True, strict=True)
 
 
 class Site(_Section):
     """The plant."""
 
-    name: str
+    name: Name
     timezone: TimeZone = "UTC"
     """Zone in which the board and the reports show times."""
 
@@ -63,20 +47,22 @@ class Site(_Section):
 class StoreSettings(_Section):
     """Where the daemon keeps what it knows."""
 
-    url: str = "sqlite:///var/agewatch.db"
+    url: StoreUrl = "sqlite:///var/agewatch.db"
 
 
 class ClockSettings(_Section):
     """The system's clock, or a replay of the past at a rate."""
 
     kind: Literal["system", "replay"] = "system"
-    start: AwareDatetime | None = None
+    start: Annotated[AwareDatetime, Time] | None = None
     rate: Positive = 1.0
 
     @model_validator(mode="after")
     def _replay_has_a_start(self) -> Self:
         if self.kind == "replay" and self.start is None:
             raise ValueError('a replay clock needs start = "2026-05-01T00:00:00Z" (any RFC 3339 time)')
+        if self.kind == "system" and self.model_fields_set & {"start", "rate"}:
+            raise ValueError('start and rate belong to kind = "replay"; the system clock takes neither')
         return self
 
 
@@ -84,29 +70,41 @@ class Feed(_Section):
     """One source of one canonical table."""
 
     table: Literal["coils", "moves", "presses", "temperatures", "outlook", "lab"]
-    path: str
+    path: Annotated[str, Field(min_length=1)]
     """File or pattern, relative to the settings file."""
-    every: Duration = timedelta(minutes=5)
+    every: Interval = timedelta(minutes=5)
     timezone: TimeZone = "UTC"
     """Zone of times that carry no offset."""
     local_times: Literal["refuse", "earlier", "later"] = "refuse"
     """What an hour that occurs twice (or never) when the clocks change stands for."""
     columns: dict[str, str] = {}
-    """Canonical name = the source's own name."""
+    """Canonical name = the source's own name; in a wide temperature file: sensor = the source's own name."""
+    ignore: list[str] = []
+    """Columns of the source that are not read (in a wide temperature file every other column is a sensor)."""
+    empty: list[str] = []
+    """Texts that stand for an empty cell, for example "NULL" or "-11111"."""
     separator: Literal[",", ";", "\t", "auto"] = "auto"
     decimal: Literal[".", ","] = "."
-    encoding: str = "utf-8"
-    time_format: str = ""
+    encoding: Encoding = "utf-8"
+    time_format: TimeFormat = ""
     """A strptime pattern for times that are not RFC 3339."""
-    stale_after: Duration | None = None
+    stale_after: Interval | None = None
     """Alarm when nothing new came for this long."""
 
     @model_validator(mode="after")
     def _columns_are_canonical(self) -> Self:
         known = TABLES[self.table].column_names
-        for name in self.columns:
-            if name not in known and self.table != "temperatures":
-                raise ValueError(f"columns.{name} is no column of {self.table}; allowed are {', '.join(known)}")
+        wrong: list[Contradiction] = []
+        if self.table != "temperatures":
+            strange = [name for name in self.columns if name not in known]
+            wrong = [(("columns", name), unknown(name, known, f"column of {self.table}")) for name in strange]
+        wrong += [
+            (("columns", name), f"{theirs} also stands under ignore; a column is read or ignored")
+            for name, theirs in self.columns.items()
+            if theirs in self.ignore
+        ]
+        if wrong:
+            raise ContradictionError(wrong)
         return self
 
     @property
@@ -118,7 +116,7 @@ class Feed(_Section):
 class Location(_Section):
     """A place where coils lie, and how it exchanges heat with them."""
 
-    sensors: list[str] = []
+    sensors: list[Name] = []
     kind: Literal["bay", "yard", "transport"] = "bay"
     surface_w_m2k: Positive | None = None
     """Heat transfer of a coil's surface; silent: 6 for bare coils, 9 for wrapped ones."""
@@ -169,7 +167,9 @@ class Grade(_Section):
     @model_validator(mode="after")
     def _can_be_assessed(self) -> Self:
         if self.aging and not self.channel:
-            raise ValueError("an aging grade needs at least one channel, for example [grade.NAME.channel.carbon]")
+            raise ValueError(
+                "an aging grade needs at least one channel, for example [grade.NAME.channel.carbon]"
+            )
         if self.rm_mpa <= self.rp02_mpa:
             raise ValueError("rm_mpa must be above rp02_mpa")
         return self
@@ -204,15 +204,15 @@ class OutlookSettings(_Section):
     horizon_days: Annotated[float, Field(gt=0, le=1000)] = 120.0
     pull_horizon_days: Annotated[float, Field(gt=0, le=1000)] = 14.0
     """Without a planned pressing, a return inside this many days asks for a pull."""
-    monthly_normals_c: Annotated[list[float], Field(min_length=12, max_length=12)] | None = None
+    monthly_normals_c: Annotated[list[Number], Field(min_length=12, max_length=12)] | None = None
     """Mean air temperature of January … December, for the time that no outlook feed covers."""
 
 
 class Screening(_Section):
     """When a reading is not believed."""
 
-    lowest_c: float = -40.0
-    highest_c: float = 65.0
+    lowest_c: Number = -40.0
+    highest_c: Number = 65.0
     gap: Duration = timedelta(hours=3)
     """Longest silence that a straight line may bridge without counting as estimated."""
 
@@ -230,7 +230,7 @@ class AlarmSettings(_Section):
 class DaemonSettings(_Section):
     """The work of the daemon."""
 
-    assess_every: Duration = timedelta(minutes=1)
+    assess_every: Interval = timedelta(minutes=1)
     control_socket: str = "var/agewatch.sock"
     http_port: Annotated[int, Field(ge=0, le=65535)] = 9464
     """Port of /livez, /readyz and /metrics on loopback; 0 turns them off."""
@@ -239,11 +239,11 @@ class DaemonSettings(_Section):
 class Endpoint(_Section):
     """A receiver of messages."""
 
-    name: str
-    url: str
+    name: Name
+    url: ReceiverUrl
     secret_env: str | None = None
     secret_file: str | None = None
-    types: list[str] = []
+    types: list[MessageType] = []
     """Message types that it takes; empty: all."""
     connect_timeout: Duration = timedelta(seconds=5)
     read_timeout: Duration = timedelta(seconds=15)
@@ -251,13 +251,11 @@ class Endpoint(_Section):
     attempts: Annotated[int, Field(ge=1)] = 12
 
     @model_validator(mode="after")
-    def _can_be_reached_safely(self) -> Self:
-        parts = urlsplit(self.url)
-        loopback = parts.hostname in ("127.0.0.1", "localhost", "::1")
-        if parts.scheme != "https" and not (parts.scheme == "http" and loopback):
-            raise ValueError("url must begin with https:// (http:// is allowed for loopback only)")
+    def _names_its_secret_once(self) -> Self:
         if (self.secret_env is None) == (self.secret_file is None):
-            raise ValueError("name the signing secret by either secret_env or secret_file; it is never in the settings")
+            raise ValueError(
+                "name the signing secret by either secret_env or secret_file; it is never in the settings"
+            )
         return self
 
 
@@ -279,15 +277,7 @@ class Settings(_Section):
     endpoint: list[Endpoint] = []
 
     @model_validator(mode="after")
-    def _names_are_used_once(self) -> Self:
-        owner: dict[str, str] = {}
-        for place, location in self.location.items():
-            for sensor in location.sensors:
-                if sensor in owner:
-                    raise ValueError(f"sensor {sensor} stands under location {owner[sensor]} and {place}; one is allowed")
-                owner[sensor] = place
-        names = [endpoint.name for endpoint in self.endpoint]
-        for name in names:
-            if names.count(name) > 1:
-                raise ValueError(f"two endpoints are named {name}; each needs its own name")
+    def _agree_with_each_other(self) -> Self:
+        if found := contradictions(self):
+            raise ContradictionError(found)
         return self
