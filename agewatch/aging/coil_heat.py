@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 import numpy as np
 
 from agewatch.aging.curves import AirCurves
 from agewatch.aging.kinetics import Floats
+from agewatch.aging.recurrence import run
 
 STEEL_DENSITY_KG_M3 = 7850.0
 STEEL_HEAT_J_KG_K = 460.0
@@ -58,13 +61,19 @@ def settled_temperature_k(curves: AirCurves, tau_s: Floats) -> Floats:
     settled_k = np.empty((*curves.air_k.T.shape, len(tau_s)))
     settled_k[0] = curves.air_k[:, :1]
     step_s = np.diff(curves.knot_s, axis=1)
-    changed = np.append(True, np.any(step_s[:, 1:] != step_s[:, :-1], axis=0))
-    for knot in range(step_s.shape[1]):
-        if changed[knot]:
-            decay, share = _step_weights(step_s[:, knot], tau_s)
-        air_k, next_air_k = curves.air_k[:, knot, None], curves.air_k[:, knot + 1, None]
-        settled_k[knot + 1] = next_air_k + (settled_k[knot] - air_k) * decay - (next_air_k - air_k) * share
+    for begin, end in even_stretches(step_s):
+        decay, share = _step_weights(step_s[:, begin], tau_s)
+        air_k = curves.air_k[:, begin : end + 1].T[:, :, None]
+        bring_k = air_k[1:] - air_k[:-1] * decay - np.diff(air_k, axis=0) * share
+        settled_k[begin : end + 1] = run(settled_k[begin], decay, bring_k)
     return settled_k
+
+
+def even_stretches(step_s: Floats) -> list[tuple[int, int]]:
+    """Runs of steps (n_locations, n_steps) over which no location's step changes, as (first, behind the last)."""
+    changes = np.flatnonzero(np.any(step_s[:, 1:] != step_s[:, :-1], axis=0)) + 1
+    edges = [0, *changes.tolist(), step_s.shape[1]]
+    return list(pairwise(edges))
 
 
 def _step_weights(step_s: Floats, tau_s: Floats) -> tuple[Floats, Floats]:

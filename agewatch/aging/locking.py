@@ -23,7 +23,12 @@ def locking_exponent(equivalent_age_s: Floats, tau_s: Floats, exponent: Floats) 
     ----------
     Cottrell and Bilby (1949) for m = 2/3; Harper (1951) for the saturation in `locked_fraction`.
     """
-    return np.asarray(np.sum((equivalent_age_s / tau_s) ** exponent, axis=-1))
+    locking = np.zeros(equivalent_age_s.shape[:-1])
+    for channel in range(equivalent_age_s.shape[-1]):
+        rows = np.isfinite(tau_s[..., channel])
+        ratio = equivalent_age_s[..., channel][rows] / tau_s[..., channel][rows]
+        locking[rows] += ratio ** exponent[..., channel][rows]
+    return locking
 
 
 def locked_fraction(locking: Floats) -> Floats:

@@ -27,7 +27,7 @@ from agewatch.plant.steels import (
 )
 from agewatch.plant.verdicts import NO_PART, Facts, judge, unassessable
 
-_BATCH_COILS = 32_768
+_BATCH_COILS = 65_536
 
 MODEL = "agewatch-1"
 """Version of the model: changed whenever the same inputs would give other numbers."""
