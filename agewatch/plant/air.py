@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -87,10 +88,9 @@ def _believed_sensors(
 def _by_name(names: Coded, at_s: Floats, celsius: Floats) -> dict[str, tuple[Floats, Floats]]:
     """Rows by name; they come ordered by (name, time)."""
     starts = np.flatnonzero(np.diff(names.codes, prepend=-2))
-    ends = [*starts[1:], len(at_s)]
     return {
         names.labels[names.codes[begin]]: (at_s[begin:end], celsius[begin:end])
-        for begin, end in zip(starts, ends, strict=True)
+        for begin, end in pairwise([*starts, len(at_s)])
     }
 
 
