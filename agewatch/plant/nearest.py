@@ -7,7 +7,7 @@ from difflib import get_close_matches
 
 
 def unknown(name: str, allowed: Iterable[str], what: str) -> str:
-    """For example: no column of coils is named "mas_kg"; did you mean "mass_kg"? allowed are coil_id, ..."""
+    """For example: no column of coils is named "mas_kg" (did you mean "mass_kg"?); allowed are coil_id, ..."""
     names = list(allowed)
     return f'no {what} is named "{name}"{did_you_mean(name, names)}; allowed are {", ".join(names)}'
 
@@ -16,4 +16,4 @@ def did_you_mean(name: str, allowed: Iterable[str]) -> str:
     """The question after the nearest of the allowed names, or nothing where none is near."""
     folded = {candidate.casefold(): candidate for candidate in allowed}
     near = get_close_matches(name.casefold(), folded, n=1, cutoff=0.6)
-    return f'; did you mean "{folded[near[0]]}"?' if near else ""
+    return f' (did you mean "{folded[near[0]]}"?)' if near else ""
