@@ -28,15 +28,19 @@ class SystemClock:
 
 
 class ReplayClock:
-    """Plant time that starts at `start_s` and runs `rate` times as fast as real time."""
+    """Plant time that starts at `start_s` and runs `rate` times as fast as real time.
 
-    def __init__(self, start_s: float, rate: float) -> None:
+    origin_s: what this computer's monotonic clock showed at `start_s`; None: it starts now. Two processes with
+    the same three numbers show the same time.
+    """
+
+    def __init__(self, start_s: float, rate: float, origin_s: float | None = None) -> None:
         self.rate = rate
-        self._start_s = start_s
-        self._origin_s = time.monotonic()
+        self.start_s = start_s
+        self.origin_s = time.monotonic() if origin_s is None else origin_s
 
     def now_s(self) -> float:
-        return self._start_s + self.rate * (time.monotonic() - self._origin_s)
+        return self.start_s + self.rate * (time.monotonic() - self.origin_s)
 
 
 class StoppedClock:

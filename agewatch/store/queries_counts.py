@@ -1,4 +1,4 @@
-"""What the daemon counts at each turn: messages that are not delivered, and how long the journal is."""
+"""Messages that are not delivered, counted."""
 
 from __future__ import annotations
 
@@ -6,7 +6,7 @@ from sqlalchemy import func, select
 
 from agewatch.plant.records import MessageState
 from agewatch.store.access import View
-from agewatch.store.schema import journal, message
+from agewatch.store.schema import message
 
 Undelivered = dict[tuple[str, str, MessageState], int]
 """How many messages by endpoint, type and state."""
@@ -23,9 +23,3 @@ def undelivered(view: View) -> Undelivered:
     return {
         (endpoint, kind, MessageState(state)): count for endpoint, kind, state, count in view.fetch(counts)
     }
-
-
-def last_journal_seq(view: View) -> int:
-    """Place of the journal's last row; 0 while it is empty."""
-    last: int | None = view.connection.execute(select(func.max(journal.c.seq))).scalar_one()
-    return last or 0

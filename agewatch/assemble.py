@@ -1,0 +1,129 @@
+"""The only place that constructs the parts and connects them."""
+
+from __future__ import annotations
+
+import logging
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from pathlib import Path
+from random import Random
+from tempfile import TemporaryDirectory
+from typing import TYPE_CHECKING
+
+from agewatch.clock import Clock, ReplayClock, StoppedClock, SystemClock, rfc3339
+from agewatch.daemon.cycle import assess_store
+from agewatch.daemon.daemon import Daemon, Surroundings
+from agewatch.daemon.delivering import Receiver
+from agewatch.daemon.feeds import FeedReading, read_feeds
+from agewatch.daemon.status import Replay, last_tick, replay
+from agewatch.messages import signing_secret
+from agewatch.plant.assessment import Assessment
+from agewatch.plant.settings import Settings
+from agewatch.plant.settings_file import LoadedSettings, load_settings
+from agewatch.store import Store, View, open_reader, open_store, sqlite_version, writes
+
+if TYPE_CHECKING:
+    from agewatch.board.app import BoardApp
+    from agewatch.messages.sink import Show, Sink
+
+_log = logging.getLogger(__name__)
+
+
+@dataclass(frozen=True, slots=True)
+class AssessedOnce:
+    """An assessment, and what the feeds brought for it."""
+
+    readings: Sequence[FeedReading]
+    assessment: Assessment
+
+
+def open_plant(config: Path) -> LoadedSettings:
+    """The settings of a plant. Raises SettingsError with every fault that they have."""
+    return load_settings(config)
+
+
+def clock_of(settings: Settings, under_way: Replay | None = None, not_before_s: float = 0.0) -> Clock:
+    """Plant time.
+
+    Parameters
+    ----------
+    under_way
+        The replay of a running daemon, whose time it is to be.
+    not_before_s
+        Where an earlier replay on the same store ended: a new one goes on from there.
+    """
+    if settings.clock.start is None or settings.clock.kind == "system":
+        return SystemClock()
+    if under_way is not None:
+        return ReplayClock(under_way.start_s, under_way.rate, under_way.origin_s)
+    return ReplayClock(max(settings.clock.start.timestamp(), not_before_s), settings.clock.rate)
+
+
+def assess_once(loaded: LoadedSettings, at_s: float | None, *, in_store: bool) -> AssessedOnce:
+    """Read every feed and assess once at `at_s` (s; None: now), in a scratch store or in the plant's own.
+
+    Raises StoreError.
+    """
+    settings = loaded.settings
+    if in_store:
+        with open_store(settings.store.url, loaded.folder) as store:
+            return _assess_in(store, loaded, _now_s(settings, store), keep=True)
+    at_s = clock_of(settings).now_s() if at_s is None else at_s
+    with (
+        TemporaryDirectory(prefix="agewatch-") as scratch,
+        open_store("sqlite:///scratch.db", Path(scratch)) as store,
+    ):
+        return _assess_in(store, loaded, at_s, keep=False)
+
+
+def build_daemon(loaded: LoadedSettings, environment: Mapping[str, str]) -> Daemon:
+    """The daemon with its store, open for writing, and its receivers, each with its secret.
+
+    Raises StoreError where another daemon has the store, SettingsError where a secret is missing.
+    """
+    settings, folder = loaded.settings, loaded.folder
+    receivers = [
+        Receiver(endpoint, signing_secret(endpoint, folder, environment), folder)
+        for endpoint in settings.endpoint
+    ]
+    store = open_store(settings.store.url, folder)
+    try:
+        with store.read() as view:
+            clock = clock_of(settings, not_before_s=_last_s(view))
+        daemon = Daemon(loaded, store, Surroundings(clock, SystemClock(), Random(), receivers))
+    except BaseException:
+        store.close()
+        raise
+    _log.info("%s: store %s (SQLite %s)", settings.site.name, store.path, sqlite_version())
+    _log.info("settings %s; plant time %s", loaded.digest[:12], rfc3339(clock.now_s()))
+    return daemon
+
+
+def build_sink(secrets: Sequence[str], port: int, show: Show) -> Sink:
+    """A receiver for trials on loopback, bound at once; port 0 takes a free one."""
+    from agewatch.messages.sink import Sink  # noqa: PLC0415 - only who receives needs a server
+
+    return Sink(secrets, SystemClock(), show, port=port)
+
+
+def _assess_in(store: Store, loaded: LoadedSettings, at_s: float, *, keep: bool) -> AssessedOnce:
+    now = StoppedClock(
+        max(at_s, SystemClock().now_s())
+    )  # what lies in the past by now may be read for any time
+    readings = read_feeds(store, loaded.settings.feed, loaded.folder, now)
+    with store.read() as view:
+        assessment, _ = assess_store(view, loaded.settings, loaded.digest, at_s)
+    if keep:
+        with store.write() as tx:
+            writes.put_assessment(tx, assessment)
+    return AssessedOnce(readings, assessment)
+
+
+def _now_s(settings: Settings, store: Store) -> float:
+    with store.read() as view:
+        return clock_of(settings, not_before_s=_last_s(view)).now_s()
+
+
+def _last_s(view: View) -> float:
+    tick = last_tick(view)
+    return 0.0 if tick is None else tick.at_s

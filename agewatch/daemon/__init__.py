@@ -1,0 +1,1 @@
+"""The daemon: reads, assesses, alarms, records and delivers, for years. The store's only writer."""
