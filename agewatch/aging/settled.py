@@ -21,7 +21,7 @@ import numpy as np
 from numpy.lib.stride_tricks import sliding_window_view
 from numpy.typing import NDArray
 
-from agewatch.aging.coil_heat import settled_temperature_k
+from agewatch.aging.coil_heat import even_stretches, settled_temperature_k
 from agewatch.aging.curves import AirCurves
 from agewatch.aging.kinetics import GAS_CONSTANT, Floats, rate, rate_slope
 
@@ -37,6 +37,7 @@ _FELT_LAGS = 20.0
 _CLASS_STEP = 0.2
 """Distance of neighbouring classes in ln τ."""
 _STENCIL = 4
+_CHUNK = 256
 
 
 @dataclass(frozen=True, slots=True)
@@ -129,7 +130,7 @@ class SettledField:
     def settled_at_knots(
         self, channel: Rows, standing: Standing, knot: Rows
     ) -> tuple[Floats, Floats, Floats]:
-        """Time (s), U (K) and what a settled coil has gathered (s) at knots (n, m); knots past the last are the last."""
+        """Time (s), U (K) and what a settled coil has gathered (s) at knots (n, m); past the last, the last."""
         n_locations, n_knots = self.curves.knot_s.shape
         location, knot = standing.location[:, None], np.minimum(knot, n_knots - 1)
         row = knot * n_locations + location
@@ -258,9 +259,11 @@ class SettledField:
         stencils = sliding_window_view(self.series.reshape(-1), _STENCIL * SERIES_TERMS)
         begin = stencils[base]
         end = stencils[base + n_locations * n_classes * SERIES_TERMS]
-        begin += place.share.astype(np.float32)[:, None] * (end - begin)
+        end -= begin
+        end *= place.share.astype(np.float32)[:, None]
+        begin += end
         by_class = begin.reshape(len(felt), _STENCIL, SERIES_TERMS)
-        terms = np.einsum("nk,nkt->nt", place.standing.weight, by_class)
+        terms = np.einsum("nk,nkt->nt", place.standing.weight.astype(np.float32), by_class)
         to_add_s[felt] = _polynomial(terms, excess_k)
         return to_add_s
 
@@ -361,26 +364,33 @@ def _excess_series(
     running = density[:, -1] / decay_per_s
     series[:, -1] = running
     step_s = np.diff(curves.knot_s[:, :count], axis=1)
-    changed = np.append(np.any(step_s[:, 1:] != step_s[:, :-1], axis=0), True)
-    for knot in range(count - 2, -1, -1):
-        if changed[knot]:
-            at_begin, at_end, decay = _decaying_weights(step_s[:, knot, None, None], decay_per_s)
-        running = at_begin * density[:, knot] + at_end * density[:, knot + 1] + decay * running
-        series[:, knot] = running
+    for begin, end in reversed(_chunks(even_stretches(step_s))):
+        at_begin, at_end, decay = _decaying_weights(step_s[:, begin, None, None], decay_per_s)
+        brought = at_begin * density[:, begin:end] + at_end * density[:, begin + 1 : end + 1]
+        for knot in range(end - 1, begin - 1, -1):
+            running = decay * running
+            running += brought[:, knot - begin]
+            series[:, knot] = running
     return series
+
+
+def _chunks(stretches: list[tuple[int, int]]) -> list[tuple[int, int]]:
+    """The same stretches, none longer than _CHUNK."""
+    return [(at, min(at + _CHUNK, end)) for begin, end in stretches for at in range(begin, end, _CHUNK)]
 
 
 def _laguerre_terms(settled_k: Floats, activation: float) -> Floats:
     """rate(U) L_k(q/U) (−1/U)^k for k = 1 … SERIES_TERMS on a new last axis."""
-    argument = activation / GAS_CONSTANT / settled_k
-    terms = np.empty((*settled_k.shape, SERIES_TERMS))
+    inverse = -1.0 / settled_k
+    argument = -activation / GAS_CONSTANT * inverse
+    terms = np.empty((SERIES_TERMS, *settled_k.shape))
     before, current = np.ones_like(argument), 1.0 - argument
     factor = rate(settled_k, activation)
     for k in range(1, SERIES_TERMS + 1):
-        factor = factor * (-1.0 / settled_k)
-        terms[..., k - 1] = factor * current
+        factor *= inverse
+        np.multiply(factor, current, out=terms[k - 1])
         before, current = current, ((2 * k + 1 - argument) * current - k * before) / (k + 1)
-    return terms
+    return np.ascontiguousarray(np.moveaxis(terms, 0, -1))
 
 
 def _decaying_weights(step_s: Floats, decay_per_s: Floats) -> tuple[Floats, Floats, Floats]:
