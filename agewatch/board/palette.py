@@ -1,0 +1,72 @@
+"""The board's colours by night and by day: grey, and a few colours for what is abnormal.
+
+The abnormal ones follow Okabe and Ito's palette, which the common deficiencies of colour vision keep apart; each
+stands beside a letter or digit all the same.
+"""
+
+from __future__ import annotations
+
+from textual.theme import Theme
+
+NIGHT = Theme(
+    name="night",
+    primary="#8a9199",
+    secondary="#6c7279",
+    foreground="#c9cdd1",
+    background="#1b1d1f",
+    surface="#232628",
+    panel="#2c2f32",
+    accent="#aab0b6",
+    warning="#e69f00",
+    error="#e8713a",
+    success="#8a9199",
+    dark=True,
+    variables={
+        "chosen": "#3d444b",
+        "chosen-away": "#2f3438",
+        "head": "#26292c",
+        "quiet": "#878d93",
+        "band": "#34393d",
+        "on-act": "#141516",
+        "act-now": "#e8713a",
+        "act-soon": "#e6a817",
+        "look": "#6cb6e6",
+        "unknown": "#d08bb4",
+        "limit": "#e8713a",
+        "mark": "#b9bec4",
+        "footer-key-foreground": "#c9cdd1",
+        "footer-background": "#26292c",
+        "footer-description-foreground": "#a2a8ae",
+    },
+)
+DAY = Theme(
+    name="day",
+    primary="#5d646b",
+    secondary="#80868c",
+    foreground="#24282c",
+    background="#e9eaeb",
+    surface="#dfe1e2",
+    panel="#d3d6d8",
+    accent="#454b51",
+    warning="#8a5a00",
+    error="#b3420a",
+    success="#5d646b",
+    dark=False,
+    variables={
+        "chosen": "#b9c0c6",
+        "chosen-away": "#cdd1d4",
+        "head": "#d9dcde",
+        "quiet": "#62686e",
+        "band": "#cdd2d6",
+        "on-act": "#ffffff",
+        "act-now": "#b3420a",
+        "act-soon": "#8a5a00",
+        "look": "#00609c",
+        "unknown": "#97437a",
+        "limit": "#b3420a",
+        "mark": "#3a4046",
+        "footer-key-foreground": "#24282c",
+        "footer-background": "#d9dcde",
+        "footer-description-foreground": "#4c5258",
+    },
+)
