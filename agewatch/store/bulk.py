@@ -14,7 +14,7 @@ from sqlalchemy import Column, ColumnElement, Select, Table, func, select
 from agewatch.plant.records import Put
 from agewatch.store.access import Transaction, View
 
-_FETCHED_AT_ONCE = 256  # few enough to stay in the processor's cache while they become columns
+_FETCHED_AT_ONCE = 64  # few enough to stay in the processor's cache while they become columns
 ABSENT = float("inf")
 """What `read_columns` wants in place of NULL: infinite numbers are never stored."""
 
@@ -41,7 +41,7 @@ def insert_unknown(
     return _for_each(tx, f"INSERT INTO {table.name} ({names}) VALUES ({places}) ON CONFLICT DO NOTHING", rows)  # noqa: S608
 
 
-def update(
+def replace(
     tx: Transaction,
     table: Table,
     rows: Iterable[tuple[Any, ...]],
@@ -88,7 +88,7 @@ def put_keyed(
     new = insert_unknown(tx, table, names, [*last.values()])
     changed = 0
     if new < len(last):
-        changed = update(tx, table, last.values(), where_differs=differing_in or names[width:])
+        changed = replace(tx, table, last.values(), where_differs=differing_in or names[width:])
     return Put(new, changed, len(last) - new - changed)
 
 

@@ -127,7 +127,7 @@ def _told(view: View, wanted: ColumnElement[bool], past: _Past) -> tuple[Told, M
     coded = Coded.of(chain(past.location, places))
     codes, move_codes = np.split(coded.codes, [len(past.ids)])
     parent = np.fromiter((row_of.get(name, -1) for name in past.parent), np.intp, len(past.ids))
-    mover = np.fromiter((row_of[name] for name in movers), np.intp, len(movers))
+    mover = np.fromiter(map(row_of.__getitem__, movers), np.intp, len(movers))
     told = Told(past.times_s[0], past.times_s[1], codes, parent)
     return told, Moves(mover, moved_s, move_codes), coded.labels
 

@@ -6,13 +6,13 @@ from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
-from sqlalchemy import bindparam, delete, select
+from sqlalchemy import bindparam, delete, select, update
 
 from agewatch.clock import rfc3339
 from agewatch.plant.records import JournalRow, Put
 from agewatch.plant.tables import COILS, CoilStatus, Row
 from agewatch.store.access import Transaction
-from agewatch.store.bulk import batches, insert_unknown, one_of, put_keyed, update
+from agewatch.store.bulk import batches, insert_unknown, one_of, put_keyed, replace
 from agewatch.store.schema import coil, move
 from agewatch.store.values import to_ms, to_s
 from agewatch.store.writes_records import append_journal
@@ -58,9 +58,11 @@ def _put_some(tx: Transaction, told: Sequence[Row], feed: str, now_s: float) -> 
         if before[:_FED] != after:
             changes.append((before, (*after, before[_FED], now_ms)))
         elif now_ms - before[_FED + 1] >= _SEEN_RESOLUTION_MS:
-            seen.append((*before[:-1], now_ms))
+            seen.append(before[0])
     insert_unknown(tx, coil, _NAMES, new)
-    update(tx, coil, [after for _, after in changes] + seen)
+    replace(tx, coil, [after for _, after in changes])
+    if seen:
+        tx.connection.execute(update(coil).where(one_of(coil.c.coil_id, seen)).values(last_seen_ms=now_ms))
     _record(tx, changes, feed, now_s)
     return Put(len(new), len(changes), len(told) - len(new) - len(changes))
 
