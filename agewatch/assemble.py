@@ -15,12 +15,12 @@ from agewatch.daemon.cycle import assess_store
 from agewatch.daemon.daemon import Daemon, Surroundings
 from agewatch.daemon.delivering import Receiver
 from agewatch.daemon.feeds import FeedReading, read_feeds
-from agewatch.daemon.status import Replay, last_tick, replay
+from agewatch.daemon.status import last_tick
 from agewatch.messages import signing_secret
 from agewatch.plant.assessment import Assessment
 from agewatch.plant.settings import Settings
 from agewatch.plant.settings_file import LoadedSettings, load_settings
-from agewatch.store import Store, View, open_reader, open_store, sqlite_version, writes
+from agewatch.store import Store, View, open_store, sqlite_version, writes
 
 if TYPE_CHECKING:
     from agewatch.board.app import BoardApp
@@ -42,20 +42,10 @@ def open_plant(config: Path) -> LoadedSettings:
     return load_settings(config)
 
 
-def clock_of(settings: Settings, under_way: Replay | None = None, not_before_s: float = 0.0) -> Clock:
-    """Plant time.
-
-    Parameters
-    ----------
-    under_way
-        The replay of a running daemon, whose time it is to be.
-    not_before_s
-        Where an earlier replay on the same store ended: a new one goes on from there.
-    """
+def clock_of(settings: Settings, not_before_s: float = 0.0) -> Clock:
+    """Plant time. `not_before_s`: where an earlier replay on the same store ended; a new one goes on from there."""
     if settings.clock.start is None or settings.clock.kind == "system":
         return SystemClock()
-    if under_way is not None:
-        return ReplayClock(under_way.start_s, under_way.rate, under_way.origin_s)
     return ReplayClock(max(settings.clock.start.timestamp(), not_before_s), settings.clock.rate)
 
 
@@ -90,13 +80,22 @@ def build_daemon(loaded: LoadedSettings, environment: Mapping[str, str]) -> Daem
     try:
         with store.read() as view:
             clock = clock_of(settings, not_before_s=_last_s(view))
-        daemon = Daemon(loaded, store, Surroundings(clock, SystemClock(), Random(), receivers))
+        chance = Random()  # noqa: S311 - spreads retries, keeps no secret
+        daemon = Daemon(loaded, store, Surroundings(clock, SystemClock(), chance, receivers))
     except BaseException:
         store.close()
         raise
     _log.info("%s: store %s (SQLite %s)", settings.site.name, store.path, sqlite_version())
     _log.info("settings %s; plant time %s", loaded.digest[:12], rfc3339(clock.now_s()))
     return daemon
+
+
+def build_board(loaded: LoadedSettings) -> BoardApp:
+    """The supervisor's screen over the plant's store and daemon, neither of which has to be there yet."""
+    from agewatch.board.app import BoardApp  # noqa: PLC0415 - the daemon does without the screen library
+    from agewatch.board.gateway import GatewayToStore, site_of  # noqa: PLC0415
+
+    return BoardApp(GatewayToStore(loaded), clock_of(loaded.settings), site_of(loaded.settings))
 
 
 def build_sink(secrets: Sequence[str], port: int, show: Show) -> Sink:
@@ -107,10 +106,7 @@ def build_sink(secrets: Sequence[str], port: int, show: Show) -> Sink:
 
 
 def _assess_in(store: Store, loaded: LoadedSettings, at_s: float, *, keep: bool) -> AssessedOnce:
-    now = StoppedClock(
-        max(at_s, SystemClock().now_s())
-    )  # what lies in the past by now may be read for any time
-    readings = read_feeds(store, loaded.settings.feed, loaded.folder, now)
+    readings = read_feeds(store, loaded.settings.feed, loaded.folder, StoppedClock(at_s), SystemClock())
     with store.read() as view:
         assessment, _ = assess_store(view, loaded.settings, loaded.digest, at_s)
     if keep:

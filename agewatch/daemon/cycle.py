@@ -8,6 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from agewatch.alarms import Alarm, AlarmKey, Effect, Timing, Transition, advance_all
+from agewatch.climate.outlook import RECENT_S
 from agewatch.daemon.conditions import conditions
 from agewatch.daemon.status import Tick, put_tick
 from agewatch.messages import compose
@@ -50,7 +51,8 @@ def take_turn(store: Store, settings: Settings, digest: str, now_s: Callable[[],
 def assess_store(view: View, settings: Settings, digest: str, at_s: float) -> tuple[Assessment, Readings]:
     """The store as it stands, evaluated at `at_s`, and the readings that it rests on."""
     coils = queries.inventory(view, at_s)
-    known = queries.readings(view, since_s=first_leg_s(coils, at_s) - _DAY_S)
+    # The outlook rests on the last weeks, however young the coils are.
+    known = queries.readings(view, since_s=min(first_leg_s(coils, at_s), at_s - RECENT_S) - _DAY_S)
     return assess(coils, known, queries.outlook(view), settings, digest, at_s), known
 
 

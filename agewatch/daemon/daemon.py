@@ -54,7 +54,7 @@ class Daemon:
         """Bind socket and port at once. Raises ControlError and SettingsError where they are taken."""
         self._settings, self._folder, self._digest = loaded.settings, loaded.folder, loaded.digest
         self._store = store
-        self._clock = around.clock
+        self._clock, self._world = around.clock, around.world
         self._trouble = StoreTrouble(store, self._settings, self._clock)
         self._metrics = Metrics(self.progress)
         self._stopping = Event()
@@ -143,7 +143,7 @@ class Daemon:
             deliverer.start()
 
     def _read(self, feed: Feed) -> None:
-        reading = take_in(self._store, feed, self._folder, self._clock)
+        reading = take_in(self._store, feed, self._folder, self._clock, self._world)
         self._metrics.took_in(feed.name, reading.put, reading.rejects)
         self._metrics.looked_at(feed.name, readable=not reading.trouble)
 

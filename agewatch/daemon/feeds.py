@@ -3,13 +3,12 @@
 from __future__ import annotations
 
 import logging
-from collections.abc import Callable, Iterable
+from collections.abc import Iterable
 from dataclasses import dataclass
 from pathlib import Path
 
 from agewatch.clock import Clock
 from agewatch.daemon.status import FeedStatus, feed_status, put_feed_status
-from agewatch.errors import FeedError
 from agewatch.intake import SourceRead, read_feed
 from agewatch.plant.records import Put, SourceRecord
 from agewatch.plant.settings import Feed
@@ -34,31 +33,30 @@ class FeedReading:
 
 
 def read_feeds(
-    store: Store, feeds: Iterable[Feed], folder: Path, clock: Clock, go_on: Callable[[], bool] = lambda: True
+    store: Store, feeds: Iterable[Feed], folder: Path, clock: Clock, world: Clock
 ) -> list[FeedReading]:
-    """Look at every feed once. One that cannot be read stops none of the others; `go_on` is asked before each."""
-    return [take_in(store, feed, folder, clock) for feed in feeds if go_on()]
+    """Look at every feed once, as `take_in` does. One that cannot be read stops none of the others."""
+    return [take_in(store, feed, folder, clock, world) for feed in feeds]
 
 
-def take_in(store: Store, feed: Feed, folder: Path, clock: Clock) -> FeedReading:
+def take_in(store: Store, feed: Feed, folder: Path, clock: Clock, world: Clock) -> FeedReading:
     """Look at one feed: each new or changed file is one transaction with its rows, rejects and record.
 
-    A file that cannot be read is left untouched and tried again at the next look. Raises StoreError.
+    A file that cannot be read is left untouched and tried again at the next look. While the past is replayed, rows
+    that are still to come for the plant but past for the `world` are taken in: they count when their time has come.
+    Raises StoreError.
     """
     with store.read() as view:
         known = {path: mark for (name, path), mark in queries.sources(view).items() if name == feed.name}
     files, put, rejects, troubles = 0, NOTHING, 0, []
-    try:
-        for source in read_feed(feed, folder, now_s=clock.now_s(), known=known):
-            files += 1
-            if source.error is not None:
-                troubles.append(f"{source.path}: {source.error}")
-            elif not source.unchanged:
-                more, kept = _keep(store, feed, source, clock.now_s())
-                put = Put(put.new + more.new, put.changed + more.changed, put.same + more.same)
-                rejects += kept
-    except FeedError as error:
-        troubles.append(f"{error.where}: {error.reason}")
+    for source in read_feed(feed, folder, now_s=max(clock.now_s(), world.now_s()), known=known):
+        files += source.error is None
+        if source.error is not None:
+            troubles.append(source.error.removeprefix(f"feed {feed.name}: "))
+        elif not source.unchanged:
+            more, kept = _keep(store, feed, source, clock.now_s())
+            put = Put(put.new + more.new, put.changed + more.changed, put.same + more.same)
+            rejects += kept
     reading = FeedReading(feed.name, files, put, rejects, "; ".join(troubles))
     _remember(store, reading, clock.now_s())
     return reading

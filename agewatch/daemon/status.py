@@ -58,13 +58,8 @@ def put_tick(tx: Transaction, tick: Tick) -> None:
     writes.put_status(tx, _TICK, asdict(tick), tick.at_s)
 
 
-def replay(view: View) -> Replay | None:
-    """The replay under way; None: the store's daemon goes by the computer's own clock."""
-    value: Any = queries.status(view).get(_REPLAY)
-    return None if value is None else Replay(**value)
-
-
 def put_replay(tx: Transaction, replay: Replay | None, now_s: float) -> None:
+    """None: the daemon goes by the computer's own clock."""
     writes.put_status(tx, _REPLAY, None if replay is None else asdict(replay), now_s)
 
 
