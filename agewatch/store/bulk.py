@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 from collections.abc import Collection, Iterable, Iterator, Sequence
 from itertools import chain
+from operator import itemgetter
 from typing import Any, TypeVar
 
 import numpy as np
@@ -84,7 +85,8 @@ def put_keyed(
     """
     names = [column.name for column in table.columns]
     width = len(table.primary_key)
-    last = {row[:width]: row for row in rows}
+    rows = list(rows)
+    last = dict(zip(map(itemgetter(*range(width)), rows), rows, strict=True))
     new = insert_unknown(tx, table, names, [*last.values()])
     changed = 0
     if new < len(last):

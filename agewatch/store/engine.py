@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import sqlite3
 from pathlib import Path
+from typing import cast
 
 from sqlalchemy import Connection, Engine, create_engine, event, make_url
 from sqlalchemy.exc import ArgumentError
@@ -71,10 +72,8 @@ def reading_engine(path: Path, busy_timeout_s: float = BUSY_TIMEOUT_S) -> Engine
 def driver_of(engine: Engine) -> sqlite3.Connection:
     """The writing engine's own sqlite3 connection, outside of any transaction."""
     pooled = engine.raw_connection()
-    driver = pooled.driver_connection
+    driver = cast(sqlite3.Connection, pooled.driver_connection)
     pooled.close()
-    if not isinstance(driver, sqlite3.Connection):
-        raise TypeError(f"{type(driver).__name__} is no SQLite connection")
     return driver
 
 

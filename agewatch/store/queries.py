@@ -1,5 +1,6 @@
 """Everything that can be asked of a store: functions of a View, by subject in queries_*.py."""
 
+from agewatch.store.queries_counts import undelivered
 from agewatch.store.queries_feeds import (
     open_reject_counts,
     open_rejects,
@@ -41,4 +42,5 @@ __all__ = [
     "source_records",
     "sources",
     "status",
+    "undelivered",
 ]

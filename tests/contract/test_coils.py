@@ -7,10 +7,11 @@ from itertools import count, groupby
 import numpy as np
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
+from sqlalchemy import select
 
 from agewatch.clock import rfc3339
 from agewatch.plant.records import Put
-from agewatch.store import Store
+from agewatch.store import Store, schema
 from tests.contract.rows import DAY, NOW, ROLLED, coil, journal_of, put, read, stays
 
 _unused = count()
@@ -81,6 +82,16 @@ def test_a_coil_that_leaves_its_feed_stays(store: Store) -> None:
     put(store, "coils", coil("C1"), coil("C2"))
     put(store, "coils", coil("C2"), now_s=NOW + DAY)
     assert read(store).coil_id.tolist() == ["C1", "C2"]
+
+
+def test_a_coil_keeps_when_it_was_seen_first_and_last(store: Store) -> None:
+    """The last sight is noted to the hour, so that a snapshot in which nothing changed need not be written."""
+    hour = 3600.0
+    for at_s in (NOW, NOW + 0.9 * hour, NOW + 1.5 * hour, NOW + 2.4 * hour):
+        put(store, "coils", coil(), now_s=at_s)
+    with store.read() as view:
+        (seen,) = view.connection.execute(select(schema.coil.c.first_seen_ms, schema.coil.c.last_seen_ms))
+    assert (seen.first_seen_ms / 1000.0, seen.last_seen_ms / 1000.0) == (NOW, NOW + 1.5 * hour)
 
 
 def test_of_two_rows_of_one_coil_the_later_counts(store: Store) -> None:

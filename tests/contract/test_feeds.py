@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from agewatch.plant.records import Put, SourceRecord
-from agewatch.plant.tables import Reject
+from agewatch.plant.tables import Reject, Row
 from agewatch.store import Store
 from agewatch.store.queries import (
     open_reject_counts,
@@ -33,10 +33,10 @@ HOUR = 3600.0
     ],
 )
 def test_rows_are_counted_as_new_same_or_changed(
-    store: Store, table: str, first: tuple[object, ...], corrected: tuple[object, ...]
+    store: Store, table: str, first: Row, corrected: Row
 ) -> None:
     """The same row twice changes nothing; another value under the same key replaces the first."""
-    other = ("C9", *first[1:]) if first[0] == "C1" else (NOW + HOUR, *first[1:])
+    other: Row = ("C9", *first[1:]) if first[0] == "C1" else (NOW + HOUR, *first[1:])
     assert put(store, table, first) == Put(1, 0, 0)
     assert put(store, table, first, now_s=NOW + DAY) == Put(0, 0, 1)
     assert put(store, table, corrected, other) == Put(1, 1, 0)

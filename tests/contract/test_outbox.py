@@ -9,7 +9,7 @@ import pytest
 from agewatch.errors import StoreError
 from agewatch.plant.records import EndpointState, MessageState, OutboxMessage
 from agewatch.store import Store
-from agewatch.store.queries import due_messages, endpoints, messages, set_aside_counts
+from agewatch.store.queries import due_messages, endpoints, messages, set_aside_counts, undelivered
 from agewatch.store.writes import (
     message_delivered,
     message_resend,
@@ -116,6 +116,20 @@ def test_a_message_that_is_set_aside_lets_the_line_go_on(store: Store) -> None:
             MessageState.SET_ASIDE,
             "HTTP 400",
         )
+
+
+def test_undelivered_messages_are_counted_by_endpoint_type_and_state(store: Store) -> None:
+    """What waits and what was set aside is told apart; what was delivered is not counted."""
+    fill(store, *(message(name) for name in "abcd"), message("e", endpoint="mes"))
+    with store.write() as tx:
+        message_delivered(tx, "msg_a", NOW)
+        message_set_aside(tx, "msg_b", "HTTP 400")
+    with store.read() as view:
+        assert undelivered(view) == {
+            ("logistics", "agewatch.pull.requested", MessageState.WAITING): 2,
+            ("logistics", "agewatch.pull.requested", MessageState.SET_ASIDE): 1,
+            ("mes", "agewatch.pull.requested", MessageState.WAITING): 1,
+        }
 
 
 def test_a_message_that_was_set_aside_can_be_sent_again_under_its_id(store: Store) -> None:

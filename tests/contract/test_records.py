@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from dataclasses import fields, replace
+from typing import Any
 
 import numpy as np
 import pytest
-from sqlalchemy import delete, update
+from sqlalchemy import Executable, delete, update
 
 from agewatch.alarms import Alarm, AlarmKind, AlarmState, Priority
 from agewatch.errors import StoreError
@@ -62,7 +63,7 @@ def assessment(*names: str, at_s: float = NOW) -> Assessment:
         "starting_point": place > 0,
     }
     coded = Coded(np.full(len(names), -1, np.int32), ())
-    given = {
+    given: dict[str, Any] = {
         field.name: plain.get(field.name, coded if field.type == "Coded" else place)
         for field in fields(Assessment)
     }
@@ -165,7 +166,7 @@ def test_an_empty_journal_has_no_number(store: Store) -> None:
 
 
 @pytest.mark.parametrize("change", [update(schema.journal).values(reason="other"), delete(schema.journal)])
-def test_the_journal_is_append_only(store: Store, change: object) -> None:
+def test_the_journal_is_append_only(store: Store, change: Executable) -> None:
     """Not even the writer can change or remove a row."""
     with store.write() as tx:
         append_journal(tx, [happened("C1")])
