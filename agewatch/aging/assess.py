@@ -5,16 +5,17 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from agewatch.aging.journey import Journey
 from agewatch.aging.kinetics import Floats
-from agewatch.aging.returning import end_locking, return_s
+from agewatch.aging.returning import approach, end_locking, return_s
 from agewatch.aging.risk import Needed, log_locking_levels, return_probability
 from agewatch.aging.settled import Rows
 from agewatch.aging.steels import Spreads, Steels
 
 PROBABILITIES = (0.1, 0.5, 0.9)
-_PASSES = 3
+_PASSES = 2
 """Times that the noise, which depends on when a coil returns, is refined."""
 
 
@@ -56,6 +57,7 @@ class Stock:
 class Now:
     """State of every coil at the time of the assessment, (n_coils,) or (n_coils, n_channels)."""
 
+    location: Rows
     coil_k: Floats
     exposure_s: Floats
     rise_mpa: Floats
@@ -66,10 +68,16 @@ class Now:
 def now(stock: Stock) -> Now:
     """Where every coil stands."""
     at_s = np.full(len(stock.limit_pct), stock.at_s)
-    coil_k, exposure_s = stock.journey.at(stock.journey.piece_of(np.arange(len(at_s)), at_s), at_s)
+    piece = stock.journey.piece_of(np.arange(len(at_s)), at_s)
+    coil_k, exposure_s = stock.journey.at(piece, at_s)
     rise_mpa = stock.steels.rise_mpa(exposure_s)
     return Now(
-        coil_k, exposure_s, rise_mpa, stock.steels.ype_pct(rise_mpa), stock.journey.estimated_fraction(at_s)
+        stock.journey.pieces.standing.location[piece],
+        coil_k,
+        exposure_s,
+        rise_mpa,
+        stock.steels.ype_pct(rise_mpa),
+        stock.journey.estimated_fraction(at_s),
     )
 
 
@@ -79,28 +87,25 @@ def return_quantiles_s(stock: Stock, state: Now) -> Floats:
     everyone = np.arange(count)
     needed = _needed(stock)
     ends = end_locking(stock.journey, stock.steels)
-    noise, shift = noise_of(stock, everyone, np.full(count, stock.at_s), state.exposure_s)
+    noise, shift = noise_of(stock, state, everyone, np.full(count, stock.at_s), state.exposure_s)
     varies = np.flatnonzero(_noise_varies(stock))
+    some_needed = needed.take(varies)
     returns_s = np.empty((len(PROBABILITIES), count))
     before = np.full(count, np.nan)
     for place, probability in enumerate(PROBABILITIES):
-        level = log_locking_levels(needed, noise, probability)
+        level = log_locking_levels(needed, noise, probability) - shift
+        for _ in range(_PASSES if len(varies) else 0):
+            at_s, exposure_s = approach(stock.journey, stock.steels, ends, varies, np.exp(level[varies]))
+            then, moved = noise_of(stock, state, varies, at_s, exposure_s)
+            level[varies] = log_locking_levels(some_needed, then, probability) - moved
         returns_s[place] = returns_s[place - 1]
         other = np.flatnonzero(level != before)  # without spreads the quantiles are one
-        returns_s[place, other] = return_s(
-            stock.journey, stock.steels, ends, other, np.exp(level - shift)[other]
-        )
+        returns_s[place, other] = return_s(stock.journey, stock.steels, ends, other, np.exp(level[other]))
         before = level
-        for _ in range(_PASSES if len(varies) else 0):
-            at_s = returns_s[place, varies]
-            at_s = np.where(np.isnan(at_s), stock.horizon_s, at_s)
-            then, moved = noise_of(stock, varies, at_s, _exposure_at(stock.journey, varies, at_s))
-            refined = np.exp(log_locking_levels(needed.take(varies), then, probability) - moved)
-            returns_s[place, varies] = return_s(stock.journey, stock.steels, ends, varies, refined)
     return returns_s
 
 
-def return_risk(stock: Stock, until_s: Floats) -> Floats:
+def return_risk(stock: Stock, state: Now, until_s: Floats) -> Floats:
     """P(returned by `until_s`), (n_coils,); NaN times: NaN. Times past the horizon count as the horizon."""
     risk = np.full(len(until_s), np.nan)
     coil = np.flatnonzero(~np.isnan(until_s))
@@ -108,36 +113,14 @@ def return_risk(stock: Stock, until_s: Floats) -> Floats:
         return risk
     at_s = np.minimum(until_s[coil], stock.horizon_s)
     exposure_s = _exposure_at(stock.journey, coil, at_s)
-    noise, shift = noise_of(stock, coil, at_s, exposure_s)
+    noise, shift = noise_of(stock, state, coil, at_s, exposure_s)
     with np.errstate(divide="ignore"):
         log_locking = np.log(stock.steels.take(coil).locking(exposure_s)) + shift
     risk[coil] = return_probability(_needed(stock).threshold().take(coil), log_locking, noise)
     return risk
 
 
-def _needed(stock: Stock) -> Needed:
-    return Needed(
-        stock.steels.needed_mpa(stock.limit_pct),
-        stock.spreads.needed_mpa,
-        stock.steels.saturation_mpa,
-        stock.spreads.log_saturation,
-        stock.spreads.kind,
-    )
-
-
-def _exposure_at(journey: Journey, coil: Rows, at_s: Floats) -> Floats:
-    return journey.at(journey.piece_of(coil, at_s), at_s)[1]
-
-
-def _noise_varies(stock: Stock) -> np.ndarray[tuple[int], np.dtype[np.bool_]]:
-    """Coils whose noise depends on when they return: several channels, uncertain weather or energies."""
-    several = (np.isfinite(stock.steels.tau_s).sum(axis=1) > 1) & (stock.spreads.log_tau > 0).any(axis=1)
-    weather = bool((stock.ahead.spread > 0).any())
-    ages = np.isfinite(stock.steels.tau_s).any(axis=1)
-    return np.asarray(ages & (several | weather | (stock.raised is not None)))
-
-
-def noise_of(stock: Stock, coil: Rows, at_s: Floats, exposure_s: Floats) -> tuple[Floats, Floats]:
+def noise_of(stock: Stock, state: Now, coil: Rows, at_s: Floats, exposure_s: Floats) -> tuple[Floats, Floats]:
     """Standard deviation of ln g at `at_s`, and how far its mean lies above the ln g of the medians, (n,).
 
     Notes
@@ -156,25 +139,36 @@ def noise_of(stock: Stock, coil: Rows, at_s: Floats, exposure_s: Floats) -> tupl
     of_tau = (steels.exponent * stock.spreads.log_tau[coil]) ** 2
     variance = np.sum(shares**2 * of_tau, axis=1)
     shift = 0.5 * (np.sum(shares * of_tau, axis=1) - variance)
-    weather = _weather_spread(stock, coil, at_s, exposure_s)
-    variance += np.sum(shares * steels.exponent * weather, axis=1) ** 2
-    if stock.raised is not None:
-        raised_s = _exposure_at(stock.raised, coil, at_s)
+    if stock.ahead.spread.any():
         with np.errstate(divide="ignore", invalid="ignore"):
-            change = np.log(steels.locking(raised_s) / steels.locking(exposure_s))
+            ahead_share = np.clip(1.0 - state.exposure_s[coil] / exposure_s, 0.0, 1.0)
+        weather = stock.ahead.at(state.location[coil], at_s - stock.at_s)[:, None] * ahead_share
+        variance += np.sum(shares * steels.exponent * np.nan_to_num(weather), axis=1) ** 2
+    if stock.raised is not None:
+        raised_s, plain_s = (_exposure_at(each, coil, at_s) for each in (stock.raised, stock.journey))
+        with np.errstate(divide="ignore", invalid="ignore"):
+            change = np.log(steels.locking(raised_s) / steels.locking(plain_s))
         variance += np.nan_to_num(change, nan=0.0, posinf=0.0, neginf=0.0) ** 2
     return np.sqrt(variance), shift
 
 
-def _weather_spread(stock: Stock, coil: Rows, at_s: Floats, exposure_s: Floats) -> Floats:
-    """sd of ln of the equivalent age at `at_s` that the outlook brings, (n, n_channels)."""
-    lead_s = at_s - stock.at_s
-    if not (stock.ahead.spread > 0).any() or not (lead_s > 0).any():
-        return np.zeros_like(exposure_s)
-    now_s = np.full(len(coil), stock.at_s)
-    piece = stock.journey.piece_of(coil, now_s)
-    past_s = stock.journey.at(piece, now_s)[1]
-    with np.errstate(divide="ignore", invalid="ignore"):
-        ahead_share = np.clip(1.0 - past_s / exposure_s, 0.0, 1.0)
-    location = stock.journey.pieces.standing.location[piece]
-    return np.nan_to_num(ahead_share * stock.ahead.at(location, lead_s)[:, None], nan=0.0)
+def _needed(stock: Stock) -> Needed:
+    return Needed(
+        stock.steels.needed_mpa(stock.limit_pct),
+        stock.spreads.needed_mpa,
+        stock.steels.saturation_mpa,
+        stock.spreads.log_saturation,
+        stock.spreads.kind,
+    )
+
+
+def _exposure_at(journey: Journey, coil: Rows, at_s: Floats) -> Floats:
+    return journey.at(journey.piece_of(coil, at_s), at_s)[1]
+
+
+def _noise_varies(stock: Stock) -> NDArray[np.bool_]:
+    """Coils whose noise depends on when they return: several channels, uncertain weather or energies."""
+    several = (np.isfinite(stock.steels.tau_s).sum(axis=1) > 1) & (stock.spreads.log_tau > 0).any(axis=1)
+    weather = bool(stock.ahead.spread.any())
+    ages = np.isfinite(stock.steels.tau_s).any(axis=1)
+    return np.asarray(ages & (several | weather | (stock.raised is not None)))

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from agewatch.aging.assess import Stock, noise_of
+from agewatch.aging.assess import Now, Stock, noise_of
 from agewatch.aging.kinetics import Floats
 from agewatch.aging.risk import Needed, return_probability
 
@@ -25,7 +25,7 @@ class Course:
     """Plateau that is not exceeded with P10, P50 and P90, (3, n)."""
 
 
-def course(stock: Stock, coil: int, at_s: Floats) -> Course:
+def course(stock: Stock, state: Now, coil: int, at_s: Floats) -> Course:
     """Follow the coil in row `coil` through the times `at_s` (s, rising, from its first leg to the horizon).
 
     Notes
@@ -41,13 +41,13 @@ def course(stock: Stock, coil: int, at_s: Floats) -> Course:
         stock.journey.field.curves.at(location, at_s),
         coil_k,
         exposure_s[:, 0],
-        _plateau_quantiles_pct(stock, coil, at_s, exposure_s),
+        _plateau_quantiles_pct(stock, state, coil, at_s, exposure_s),
     )
 
 
-def _plateau_quantiles_pct(stock: Stock, coil: int, at_s: Floats, exposure_s: Floats) -> Floats:
+def _plateau_quantiles_pct(stock: Stock, state: Now, coil: int, at_s: Floats, exposure_s: Floats) -> Floats:
     rows = np.full(len(at_s), coil)
-    noise, shift = noise_of(stock, rows, at_s, exposure_s)
+    noise, shift = noise_of(stock, state, rows, at_s, exposure_s)
     with np.errstate(divide="ignore"):
         log_locking = np.log(stock.steels.take(rows).locking(exposure_s)) + shift
     everywhere = np.full(len(_LEVELS_PCT), coil)

@@ -48,6 +48,28 @@ def return_s(journey: Journey, steels: Steels, ends: Floats, coil: Rows, locking
     return reached_s
 
 
+def approach(
+    journey: Journey, steels: Steels, ends: Floats, coil: Rows, locking: Floats
+) -> tuple[Floats, Floats]:
+    """About when coils reach a locking exponent, s, (n,), and with what equivalent age, s, (n, n_channels).
+
+    At the horizon for those that do not reach it. Quick, and near enough to weigh uncertainties by; arguments as
+    for `return_s`.
+    """
+    piece = _piece_of_return(journey, ends, coil, locking)
+    last = np.append(journey.first_piece[1:], len(ends))[coil] - 1
+    at_s, exposure_s = journey.pieces.end_s[last], journey.end_exposure_s[last]
+    rows = np.flatnonzero(piece >= 0)
+    if len(rows):
+        piece, power = piece[rows], 1.0 / steels.exponent[coil[rows], 0]
+        straight = locking[rows] ** power
+        guess_s, share = _guess_s(journey, steels, piece, straight, power)
+        at_s[rows] = guess_s
+        begin_s, end_s = journey.start_exposure_s[piece], journey.end_exposure_s[piece]
+        exposure_s[rows] = begin_s + (end_s - begin_s) * share[:, None]
+    return at_s, exposure_s
+
+
 def _piece_of_return(journey: Journey, ends: Floats, coil: Rows, locking: Floats) -> Rows:
     """The first piece at whose end g is reached, (n,); -1: none."""
     count = np.diff(np.append(journey.first_piece, len(ends)))[coil]
@@ -63,7 +85,7 @@ def _solve(journey: Journey, steels: Steels, piece: Rows, locking: Floats) -> Fl
     low_s, high_s = journey.pieces.start_s[piece], journey.pieces.end_s[piece]
     power = 1.0 / steels.exponent[coil, 0]
     goal = locking**power
-    guess_s = np.clip(_guess_s(journey, steels, piece, goal, power), low_s, high_s)
+    guess_s, _ = _guess_s(journey, steels, piece, goal, power)
     reached_s = guess_s.copy()
     left = np.arange(len(piece))
     for _ in range(_MOST_STEPS):
@@ -85,8 +107,14 @@ def _solve(journey: Journey, steels: Steels, piece: Rows, locking: Floats) -> Fl
     return reached_s
 
 
-def _guess_s(journey: Journey, steels: Steels, piece: Rows, goal: Floats, power: Floats) -> Floats:
-    """Near the answer for one channel, where the straightened g is equivalent age over τ; else between the ends."""
+def _guess_s(
+    journey: Journey, steels: Steels, piece: Rows, goal: Floats, power: Floats
+) -> tuple[Floats, Floats]:
+    """About when the straightened g reaches `goal`, s, and with what share of the piece's equivalent age, (n,).
+
+    For one channel the straightened g is equivalent age over τ, and the time is near the answer; else it lies in
+    proportion between the ends of the piece.
+    """
     pieces = journey.pieces.take(piece)
     coil = pieces.coil
     begin = _locking(steels, coil, journey.start_exposure_s[piece]) ** power
@@ -100,7 +128,7 @@ def _guess_s(journey: Journey, steels: Steels, piece: Rows, goal: Floats, power:
         pieces.standing.take(single),
         journey.moment_s[piece[single], 0] + still_s,
     )
-    return guess_s
+    return np.clip(guess_s, pieces.start_s, pieces.end_s), share
 
 
 def _locking(steels: Steels, coil: Rows, exposure_s: Floats) -> Floats:

@@ -145,7 +145,7 @@ def _evaluate(ready: Prepared, settings: Settings) -> tuple[dict[str, NDArray[An
     stock, press_s = ready.stock, ready.inventory.press_s
     state = now(stock)
     p10_s, p50_s, p90_s = return_quantiles_s(stock, state)
-    risk = return_risk(stock, np.maximum(press_s, stock.at_s))
+    risk = return_risk(stock, state, np.maximum(press_s, stock.at_s))
     facts = Facts(
         at_s=stock.at_s,
         horizon_s=stock.horizon_s,

@@ -49,12 +49,13 @@ def trace_coil(
     if air is None or unassessable(inventory, settings, air.covered, at_s).codes[0] >= 0:
         return None
     stock = prepare(inventory, air, settings, at_s).stock
-    returns_s = return_quantiles_s(stock, now(stock))[:, 0]
+    state = now(stock)
+    returns_s = return_quantiles_s(stock, state)[:, 0]
     ahead_s = np.nanmax([*returns_s, inventory.press_s[0], at_s + _LEAST_AHEAD_S])
     begin_s = float(inventory.temper_rolled_s[0])
     end_s = min(float(ahead_s) + 0.1 * (float(ahead_s) - begin_s), stock.horizon_s)
     times_s = np.unique(np.append(np.linspace(begin_s, end_s, _POINTS), at_s))
-    followed = course(stock, 0, times_s)
+    followed = course(stock, state, 0, times_s)
     return CoilTrace(
         str(inventory.coil_id[0]),
         times_s,
