@@ -36,6 +36,9 @@ def as_store_errors(path: Path) -> Iterator[None]:
         raise _store_error(path, error.orig or error) from error
     except (sqlite3.Error, PoolTimeoutError) as error:
         raise _store_error(path, error) from error
+    except UnicodeEncodeError as error:  # half a surrogate pair, which JSON can smuggle in
+        text = ascii(error.object[error.start : error.end])
+        raise StoreError(f"store {path}: {text} is no character; give a text without it") from error
 
 
 def _store_error(path: Path, error: BaseException) -> StoreError:

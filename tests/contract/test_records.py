@@ -176,6 +176,14 @@ def test_the_journal_is_append_only(store: Store, change: Executable) -> None:
         assert journal(view) == [happened("C1")]
 
 
+def test_a_text_with_half_a_character_is_refused(store: Store) -> None:
+    """Half a surrogate pair cannot be stored: the error says so, and nothing of the change is kept."""
+    with pytest.raises(StoreError, match=r"'\\ud800' is no character"), store.write() as tx:
+        append_journal(tx, [happened("C1"), happened("C\ud800")])
+    with store.read() as view:
+        assert journal(view) == []
+
+
 def test_status_keeps_the_last_value_of_each_key(store: Store) -> None:
     """Anything that JSON can hold comes back as it was."""
     value = {"list": [1, 2.5, None, True, "ž"], "nested": {"a": {}}}

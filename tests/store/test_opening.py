@@ -62,6 +62,14 @@ def test_the_writer_is_durable_and_holds_references(tmp_path: Path) -> None:
         assert {name: pragma(tx, name) for name in wanted} == wanted
 
 
+def test_a_transaction_holds_the_right_to_write_from_its_begin(tmp_path: Path) -> None:
+    """What it reads first cannot be changed by any other program before it writes."""
+    with open_store(URL, tmp_path) as store, closing(sqlite3.connect(store.path, timeout=0.05)) as other:
+        with store.write(), pytest.raises(sqlite3.OperationalError, match="database is locked"):
+            other.execute("BEGIN IMMEDIATE")
+        other.execute("BEGIN IMMEDIATE")
+
+
 def test_a_view_cannot_write(tmp_path: Path) -> None:
     """Connections that read are refused any change."""
     fill(tmp_path)
