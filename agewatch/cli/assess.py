@@ -9,6 +9,7 @@ import click
 from agewatch.assemble import assess_once, open_plant
 from agewatch.cli import assessment_output as output
 from agewatch.cli.options import OutputForm, Rfc3339, chosen_form, config_option, form_options
+from agewatch.errors import FeedError, UsageError
 from agewatch.plant.assessment import Assessment, Verdict
 
 _FAILING = {
@@ -42,14 +43,20 @@ def command(
     """Assess every stored coil once and print what was found.
 
     Reads the feeds into a scratch store and leaves the plant's own store alone, unless --store is given.
+
+    Exit status: 0 done, 1 a finding that --fail-on asks for, 2 bad usage or settings, 3 a feed cannot be read.
     """
     form = chosen_form(as_json, as_csv)
+    if in_store and at_s is not None:
+        raise UsageError("--store and --at exclude each other: the store is to hold what is true now")
     plant = open_plant(config)
     found = assess_once(plant, at_s, in_store=in_store)
     for reading in found.readings:
         if reading.trouble:
             click.echo(f"agewatch: feed {reading.feed}: {reading.trouble}", err=True)
     _print(found.assessment, form, plant.settings.site.timezone)
+    if any(reading.trouble for reading in found.readings):
+        click.get_current_context().exit(FeedError.exit_status)
     if _is_finding(found.assessment, fail_on):
         click.get_current_context().exit(1)
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import json
 import math
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from datetime import datetime
 from zoneinfo import ZoneInfo
 
@@ -38,11 +38,9 @@ def json_lines(assessment: Assessment) -> Iterator[str]:
 
 def csv_lines(assessment: Assessment) -> Iterator[str]:
     """A heading and a line for each coil; `return_at` becomes three columns."""
-    for row, fields in enumerate(coil_fields(assessment)):
-        flat = _flat(fields)
-        if row == 0:
-            yield csv_line(flat)
-        yield csv_line(flat.values())
+    yield csv_line(_flat_names(_columns(assessment)))
+    for fields in coil_fields(assessment):
+        yield csv_line(_flat_values(fields))
 
 
 def text_lines(assessment: Assessment, timezone: str) -> Iterator[str]:
@@ -83,7 +81,14 @@ def summary(assessment: Assessment, timezone: str) -> str:
 
 def coil_fields(assessment: Assessment) -> Iterator[Fields]:
     """Every coil by the names and units of the machine output."""
-    columns = {
+    columns = _columns(assessment)
+    names = tuple(columns)
+    for values in zip(*columns.values(), strict=True):
+        yield dict(zip(names, values, strict=True))
+
+
+def _columns(assessment: Assessment) -> dict[str, list[object]]:
+    return {
         "coil_id": assessment.coil_id.tolist(),
         "grade": assessment.grade.names().tolist(),
         "part": assessment.part.names().tolist(),
@@ -104,19 +109,22 @@ def coil_fields(assessment: Assessment) -> Iterator[Fields]:
         "assumed": assessment.assumed.names().tolist(),
         "starting_point": assessment.starting_point.tolist(),
     }
-    names = tuple(columns)
-    for values in zip(*columns.values(), strict=True):
-        yield dict(zip(names, values, strict=True))
 
 
-def _flat(fields: Fields) -> Fields:
-    flat: Fields = {}
-    for name, value in fields.items():
-        if isinstance(value, dict):
-            flat |= {f"{name}_{quantile}": value[quantile] for quantile in QUANTILES}
+def _flat_names(names: Iterable[str]) -> Iterator[str]:
+    for name in names:
+        if name == "return_at":
+            yield from (f"{name}_{quantile}" for quantile in QUANTILES)
         else:
-            flat[name] = value
-    return flat
+            yield name
+
+
+def _flat_values(fields: Fields) -> Iterator[object]:
+    for value in fields.values():
+        if isinstance(value, dict):
+            yield from value.values()
+        else:
+            yield value
 
 
 def _numbers(column: Floats) -> list[object]:
@@ -137,7 +145,8 @@ def _returns(assessment: Assessment) -> list[object]:
 
 def _texts(assessment: Assessment, rows: Rows, zone: ZoneInfo) -> Iterator[tuple[str, ...]]:
     for row in rows.tolist():
-        mark = " (starting point)" if assessment.starting_point[row] else ""
+        dated = math.isfinite(assessment.return_p50_s[row])
+        mark = " (starting point)" if dated and assessment.starting_point[row] else ""
         yield (
             str(assessment.coil_id[row]),
             Verdict(assessment.verdict[row]).word,

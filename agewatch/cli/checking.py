@@ -7,8 +7,9 @@ from collections import Counter
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 
+from agewatch.assemble import clock_of
 from agewatch.clock import SystemClock
-from agewatch.errors import FeedError, SettingsError
+from agewatch.errors import SettingsError
 from agewatch.intake import read_feed
 from agewatch.messages import signing_secret
 from agewatch.plant.settings import Feed, Settings
@@ -85,18 +86,17 @@ def look_at(loaded: LoadedSettings) -> PlantFound:
 
 def _look_at_feed(feed: Feed, loaded: LoadedSettings, names: Mapping[str, Counter[str]]) -> FeedFound:
     found = FeedFound(feed.name, feed.table)
-    try:
-        for source in read_feed(feed, loaded.folder, now_s=SystemClock().now_s(), known={}):
-            found.files += 1
-            if source.error is not None:
-                found.troubles.append(f"{source.path}: {source.error}")
-            found.rows += len(source.rows)
-            found.rejects += source.rejects
-            found.newest_s = max((*_times(feed.table, source.rows), found.newest_s or 0.0)) or None
-            for kind, column in _named_columns(feed.table):
-                names[kind].update(str(row[column]) for row in source.rows if row[column])
-    except FeedError as error:
-        found.troubles.append(f"{error.where}: {error.reason}")
+    now_s = max(SystemClock().now_s(), clock_of(loaded.settings).now_s())
+    for source in read_feed(feed, loaded.folder, now_s=now_s, known={}):
+        if source.error is not None:
+            found.troubles.append(source.error.removeprefix(f"feed {feed.name}: "))
+            continue
+        found.files += 1
+        found.rows += len(source.rows)
+        found.rejects += source.rejects
+        found.newest_s = max((*_times(feed.table, source.rows), found.newest_s or 0.0)) or None
+        for kind, column in _named_columns(feed.table):
+            names[kind].update(str(row[column]) for row in source.rows if row[column])
     return found
 
 

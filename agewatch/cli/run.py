@@ -14,6 +14,7 @@ from agewatch.cli.options import config_option
 from agewatch.daemon.logs import set_up_log
 from agewatch.daemon.notify import Notify
 from agewatch.daemon.run import run
+from agewatch.daemon.signals import EndingSignals
 
 
 @click.command("run")
@@ -25,4 +26,5 @@ def command(config: Path, log: Literal["text", "json"]) -> None:
     It is the only writer of its store, and ends cleanly at SIGTERM or SIGINT.
     """
     set_up_log(log, debug=bool(click.get_current_context().meta.get(DEBUG)))
-    run(build_daemon(open_plant(config), os.environ), Notify(os.environ))
+    with EndingSignals() as signals:
+        run(build_daemon(open_plant(config), os.environ), Notify(os.environ), signals)

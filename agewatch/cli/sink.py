@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import json
 import os
-import signal
 from collections.abc import Callable
 from dataclasses import asdict
 from pathlib import Path
@@ -14,6 +13,7 @@ import click
 from agewatch.assemble import build_sink
 from agewatch.cli.options import debug_option, form_options
 from agewatch.clock import rfc3339
+from agewatch.daemon.signals import EndingSignals
 from agewatch.errors import UsageError
 from agewatch.messages.received import ReceivedMessage, line
 from agewatch.messages.sink import Sink
@@ -32,11 +32,12 @@ def command(as_json: bool, port: int, secret_env: str | None, secret_file: Path 
 
     Listens on loopback only, until it is interrupted. A message that comes again is marked.
     """
-    sink = _listen(_secret(secret_env, secret_file), port, json_line if as_json else line)
-    signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT, signal.SIGTERM})
-    with sink:
+    with (
+        EndingSignals() as signals,
+        _listen(_secret(secret_env, secret_file), port, json_line if as_json else line) as sink,
+    ):
         click.echo(f"receiving on {sink.url}", err=True)
-        signal.sigwait({signal.SIGINT, signal.SIGTERM})
+        signals.wait()
 
 
 def json_line(message: ReceivedMessage) -> str:

@@ -10,7 +10,8 @@ from random import Random
 from threading import Event, Thread
 from time import monotonic
 
-from agewatch.alarms import Cleared, Raised
+from agewatch import __version__
+from agewatch.alarms import AGEWATCH, Cleared, Raised
 from agewatch.clock import Clock, ReplayClock
 from agewatch.daemon.actions import Desk
 from agewatch.daemon.control import ControlSocket, Reply, Request
@@ -25,12 +26,16 @@ from agewatch.daemon.schedule import Schedule
 from agewatch.daemon.status import Replay, put_replay
 from agewatch.daemon.trouble import StoreTrouble
 from agewatch.errors import StoreError
+from agewatch.plant.assess import MODEL
+from agewatch.plant.records import JournalRow
 from agewatch.plant.settings import Feed
 from agewatch.plant.settings_file import LoadedSettings
-from agewatch.store import Store
+from agewatch.store import Store, writes
 
 END_WITHIN_S = 8.0
 """Real seconds that the work under way is given at the end."""
+SENT_WITHIN_S = 3.0
+"""Of these, what an attempt to deliver is given: it would be made again anyway, under the same id."""
 ASSESS = "assess"
 
 _log = logging.getLogger(__name__)
@@ -84,7 +89,7 @@ class Daemon:
 
     def start(self) -> None:
         """Begin: all feeds once, one assessment, then everything at its pace."""
-        self._note_clock()
+        self._note_start()
         self._control.start()
         if self._health is not None:
             self._health.start()
@@ -92,7 +97,7 @@ class Daemon:
 
     def stop(self) -> None:
         """End: begin nothing more, let what is under way finish, and close the store."""
-        until_s = monotonic() + END_WITHIN_S
+        until_s, sent_until_s = monotonic() + END_WITHIN_S, monotonic() + SENT_WITHIN_S
         self._stopping.set()
         for deliverer in self._deliverers:
             deliverer.stop()
@@ -100,7 +105,7 @@ class Daemon:
         if self._first_round.is_alive():
             self._first_round.join(until_s - monotonic())
         left = [*self._schedule.stop(until_s - monotonic())]
-        left += [each.loop.name for each in self._deliverers if not each.wait(until_s - monotonic())]
+        left += [each.loop.name for each in self._deliverers if not each.wait(sent_until_s - monotonic())]
         if self._health is not None:
             self._health.stop()
         if left or self._first_round.is_alive():
@@ -138,6 +143,8 @@ class Daemon:
             if self._stopping.is_set():
                 return
             self._schedule.do_now(name)
+        if self._stopping.is_set():
+            return
         self._schedule.start()
         for deliverer in self._deliverers:
             deliverer.start()
@@ -194,11 +201,14 @@ class Daemon:
             self._metrics.attempted,
         )
 
-    def _note_clock(self) -> None:
+    def _note_start(self) -> None:
         clock, now_s = self._clock, self._clock.now_s()
         replay = Replay(clock.start_s, clock.rate, clock.origin_s) if isinstance(clock, ReplayClock) else None
+        detail = {"version": __version__, "model": MODEL, "settings_digest": self._digest}
+        row = JournalRow(now_s, "daemon", "started", self._settings.site.name, AGEWATCH, "", "", "", detail)
         with self._store.write() as tx:
             put_replay(tx, replay, now_s)
+            writes.append_journal(tx, [row])
 
 
 def _tell(turn: Turn, took_s: float) -> None:

@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+import logging
 import socket
 from collections.abc import Mapping
 
 READY = "READY=1"
 ALIVE = "WATCHDOG=1"
 STOPPING = "STOPPING=1"
+
+_log = logging.getLogger(__name__)
 
 
 class Notify:
@@ -20,7 +23,11 @@ class Notify:
         """How often `ALIVE` is to be sent: half of what systemd waits for; 0: it does not wait."""
 
     def tell(self, state: str) -> None:
-        """Raises OSError where the socket is named but cannot be reached."""
-        if self._address:
+        """A service manager that cannot be reached is no reason to stop: it is logged."""
+        if not self._address:
+            return
+        try:
             with socket.socket(socket.AF_UNIX, socket.SOCK_DGRAM | socket.SOCK_CLOEXEC) as sender:
                 sender.sendto(state.encode("ascii"), self._address)
+        except OSError as fault:
+            _log.warning("the service manager could not be told %s: %s", state, fault)

@@ -3,46 +3,41 @@
 from __future__ import annotations
 
 import logging
-import signal
 from time import monotonic
 
 from agewatch.daemon.daemon import Daemon
 from agewatch.daemon.notify import ALIVE, READY, STOPPING, Notify
+from agewatch.daemon.signals import EndingSignals
 
-LOOK_EVERY_S = 0.5
-SIGNALS = frozenset({signal.SIGTERM, signal.SIGINT})
+LOOK_EVERY_S = 0.25
 
 _log = logging.getLogger(__name__)
 
 
-def run(daemon: Daemon, notify: Notify) -> None:
-    """Run until a signal asks for the end, or until the store fails for good; then StoreError is raised.
-
-    Signals are waited for, not handled: no handler ever runs in the middle of something else.
-    """
-    signal.pthread_sigmask(signal.SIG_BLOCK, SIGNALS)
+def run(daemon: Daemon, notify: Notify, signals: EndingSignals) -> None:
+    """Run until a signal asks for the end, or until the store fails for good; then StoreError is raised."""
     daemon.start()
-    _serve(daemon, notify)
-    notify.tell(STOPPING)
-    daemon.stop()
+    try:
+        _serve(daemon, notify, signals)
+    finally:
+        notify.tell(STOPPING)
+        daemon.stop()
     _log.info("ended")
     if daemon.fatal is not None:
         raise daemon.fatal
 
 
-def _serve(daemon: Daemon, notify: Notify) -> None:
+def _serve(daemon: Daemon, notify: Notify, signals: EndingSignals) -> None:
     told_ready, told_alive_s = False, monotonic()
-    while daemon.fatal is None:
-        if signal.sigtimedwait(SIGNALS, LOOK_EVERY_S) is not None:
-            return
+    while daemon.fatal is None and not signals.wait(LOOK_EVERY_S):
         if daemon.ready and not told_ready:
             notify.tell(READY)
             told_ready = True
             _log.info("ready")
-        if notify.alive_every_s and monotonic() - told_alive_s >= notify.alive_every_s - LOOK_EVERY_S:
-            stuck = daemon.stuck()
-            if stuck:
+        due = notify.alive_every_s and monotonic() - told_alive_s >= notify.alive_every_s - LOOK_EVERY_S
+        if told_ready and due:
+            told_alive_s = monotonic()
+            if stuck := daemon.stuck():
                 _log.error("not well: %s", "; ".join(stuck))
             else:
                 notify.tell(ALIVE)
-                told_alive_s = monotonic()

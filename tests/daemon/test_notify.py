@@ -28,6 +28,12 @@ def test_silent_where_nobody_asks() -> None:
     assert notify.alive_every_s == 0.0
 
 
+def test_manager_that_is_gone_stops_nothing(tmp_path: Path, caplog: pytest.LogCaptureFixture) -> None:
+    """A service manager that cannot be reached is logged, and nothing else happens."""
+    Notify({"NOTIFY_SOCKET": str(tmp_path / "gone.sock")}).tell(READY)
+    assert "could not be told READY=1" in caplog.text
+
+
 def test_alive_twice_as_often_as_is_waited_for() -> None:
     """The sign of life is due at half of the time that the service manager waits."""
     assert Notify({"WATCHDOG_USEC": "30000000"}).alive_every_s == 15.0
