@@ -23,6 +23,7 @@ from agewatch.cli.demo_plant import Process, copy_plant, daemon, end, write_sett
 from agewatch.cli.options import debug_option
 from agewatch.cli.tables import text_table
 from agewatch.errors import AgeWatchError, StoreError
+from agewatch.messages import MessageType
 from agewatch.messages.inert import inert
 from agewatch.messages.received import ReceivedMessage, line
 from agewatch.plant.settings_file import LoadedSettings
@@ -150,12 +151,16 @@ def _tell(loaded: LoadedSettings, received: Sequence[ReceivedMessage]) -> None:
     if assessment is None or not len(assessment):
         raise AgeWatchError(f"demo: no coil was assessed{_last_words(loaded.folder)}")
     click.echo(summary(assessment, loaded.settings.site.timezone))
-    click.echo(f"\n{len(alarms)} alarms")
+    click.echo(f"\nalarms: {len(alarms)}")
     for text in _alarm_lines(alarms):
         click.echo(text)
-    click.echo(f"\n{len(received)} messages")
+    signs = [message for message in received if message.verified and message.type == MessageType.HEARTBEAT]
+    click.echo(
+        f"\nmessages received: {len(received)}, of them {len(signs)} signs of life, verified, and these:"
+    )
     for message in received:
-        click.echo(line(message))
+        if message not in signs:
+            click.echo(line(message))
     unverified = sum(not message.verified for message in received)
     if unverified:
         raise AgeWatchError(f"demo: {unverified} of {len(received)} messages do not verify")
