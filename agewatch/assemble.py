@@ -14,7 +14,7 @@ from agewatch.clock import Clock, ReplayClock, StoppedClock, SystemClock, rfc333
 from agewatch.daemon.cycle import assess_store
 from agewatch.daemon.daemon import Daemon, Surroundings
 from agewatch.daemon.delivering import Receiver
-from agewatch.daemon.feeds import FeedReading, read_feeds
+from agewatch.daemon.feeds import FeedReading, past_until_s, read_feeds
 from agewatch.daemon.status import last_tick
 from agewatch.messages import signing_secret
 from agewatch.plant.assessment import Assessment
@@ -106,7 +106,8 @@ def build_sink(secrets: Sequence[str], port: int, show: Show) -> Sink:
 
 
 def _assess_in(store: Store, loaded: LoadedSettings, at_s: float, *, keep: bool) -> AssessedOnce:
-    readings = read_feeds(store, loaded.settings.feed, loaded.folder, StoppedClock(at_s), SystemClock())
+    until_s = max(at_s, past_until_s(clock_of(loaded.settings)))
+    readings = read_feeds(store, loaded.settings.feed, loaded.folder, StoppedClock(at_s), until_s)
     with store.read() as view:
         assessment, _ = assess_store(view, loaded.settings, loaded.digest, at_s)
     if keep:

@@ -8,7 +8,7 @@ from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 
 from agewatch.assemble import clock_of
-from agewatch.clock import SystemClock
+from agewatch.daemon.feeds import past_until_s
 from agewatch.errors import SettingsError
 from agewatch.intake import read_feed
 from agewatch.messages import signing_secret
@@ -86,8 +86,8 @@ def look_at(loaded: LoadedSettings) -> PlantFound:
 
 def _look_at_feed(feed: Feed, loaded: LoadedSettings, names: Mapping[str, Counter[str]]) -> FeedFound:
     found = FeedFound(feed.name, feed.table)
-    now_s = max(SystemClock().now_s(), clock_of(loaded.settings).now_s())
-    for source in read_feed(feed, loaded.folder, now_s=now_s, known={}):
+    until_s = past_until_s(clock_of(loaded.settings))
+    for source in read_feed(feed, loaded.folder, now_s=until_s, known={}):
         if source.error is not None:
             found.troubles.append(source.error.removeprefix(f"feed {feed.name}: "))
             continue

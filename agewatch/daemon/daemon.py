@@ -17,7 +17,7 @@ from agewatch.daemon.actions import Desk
 from agewatch.daemon.control import ControlSocket, Reply, Request
 from agewatch.daemon.cycle import Turn, take_turn
 from agewatch.daemon.delivering import Deliverer, Receiver
-from agewatch.daemon.feeds import take_in
+from agewatch.daemon.feeds import past_until_s, take_in
 from agewatch.daemon.health import Health
 from agewatch.daemon.housekeeping import HOUSEKEEPING_EVERY, keep_house
 from agewatch.daemon.loops import Progress
@@ -59,7 +59,7 @@ class Daemon:
         """Bind socket and port at once. Raises ControlError and SettingsError where they are taken."""
         self._settings, self._folder, self._digest = loaded.settings, loaded.folder, loaded.digest
         self._store = store
-        self._clock, self._world = around.clock, around.world
+        self._clock = around.clock
         self._trouble = StoreTrouble(store, self._settings, self._clock)
         self._metrics = Metrics(self.progress)
         self._stopping = Event()
@@ -70,12 +70,9 @@ class Daemon:
         self._desk = Desk(store, self._settings, self._clock)
         self._add_jobs()
         daemon = self._settings.daemon
+        pages = (self.stuck, self.unready, self._metrics.registry)
+        self._health = Health(daemon.http_port, *pages) if daemon.http_port else None
         self._control = ControlSocket(self._folder / daemon.control_socket, self._answer, self._refuse)
-        self._health = (
-            Health(daemon.http_port, self.stuck, self.unready, self._metrics.registry)
-            if daemon.http_port
-            else None
-        )
 
     @property
     def fatal(self) -> StoreError | None:
@@ -150,7 +147,7 @@ class Daemon:
             deliverer.start()
 
     def _read(self, feed: Feed) -> None:
-        reading = take_in(self._store, feed, self._folder, self._clock, self._world)
+        reading = take_in(self._store, feed, self._folder, self._clock, past_until_s(self._clock))
         self._metrics.took_in(feed.name, reading.put, reading.rejects)
         self._metrics.looked_at(feed.name, readable=not reading.trouble)
 

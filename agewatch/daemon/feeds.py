@@ -7,7 +7,7 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 from pathlib import Path
 
-from agewatch.clock import Clock
+from agewatch.clock import Clock, ReplayClock
 from agewatch.daemon.status import FeedStatus, feed_status, put_feed_status
 from agewatch.intake import SourceRead, read_feed
 from agewatch.plant.records import Put, SourceRecord
@@ -17,6 +17,7 @@ from agewatch.store import Store, queries, writes
 _log = logging.getLogger(__name__)
 
 NOTHING = Put(0, 0, 0)
+_REPLAYED_S = 365 * 86_400.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,24 +33,31 @@ class FeedReading:
     """Why it, or a file of it, cannot be read; "" when all could."""
 
 
+def past_until_s(clock: Clock) -> float:
+    """Up to when files may tell of what has happened (s): now, or while the past is replayed a year on.
+
+    Rows that are still to come for the plant are taken in then, and count when their time has come.
+    """
+    return clock.now_s() + (_REPLAYED_S if isinstance(clock, ReplayClock) else 0.0)
+
+
 def read_feeds(
-    store: Store, feeds: Iterable[Feed], folder: Path, clock: Clock, world: Clock
+    store: Store, feeds: Iterable[Feed], folder: Path, clock: Clock, until_s: float
 ) -> list[FeedReading]:
     """Look at every feed once, as `take_in` does. One that cannot be read stops none of the others."""
-    return [take_in(store, feed, folder, clock, world) for feed in feeds]
+    return [take_in(store, feed, folder, clock, until_s) for feed in feeds]
 
 
-def take_in(store: Store, feed: Feed, folder: Path, clock: Clock, world: Clock) -> FeedReading:
+def take_in(store: Store, feed: Feed, folder: Path, clock: Clock, until_s: float) -> FeedReading:
     """Look at one feed: each new or changed file is one transaction with its rows, rejects and record.
 
-    A file that cannot be read is left untouched and tried again at the next look. While the past is replayed, rows
-    that are still to come for the plant but past for the `world` are taken in: they count when their time has come.
-    Raises StoreError.
+    A file that cannot be read is left untouched and tried again at the next look. A row is rejected that
+    tells of something as done that lies after `until_s` (s). Raises StoreError.
     """
     with store.read() as view:
         known = {path: mark for (name, path), mark in queries.sources(view).items() if name == feed.name}
     files, put, rejects, troubles = 0, NOTHING, 0, []
-    for source in read_feed(feed, folder, now_s=max(clock.now_s(), world.now_s()), known=known):
+    for source in read_feed(feed, folder, now_s=until_s, known=known):
         files += source.error is None
         if source.error is not None:
             troubles.append(source.error.removeprefix(f"feed {feed.name}: "))

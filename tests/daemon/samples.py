@@ -96,7 +96,7 @@ class TinyPlant:
 
     def read(self) -> Mapping[str, FeedReading]:
         """Look at every feed once; what came of it by table."""
-        found = read_feeds(self.store, self.loaded.settings.feed, self.folder, self.clock, self.clock)
+        found = read_feeds(self.store, self.loaded.settings.feed, self.folder, self.clock, self.clock.now_s())
         return {reading.feed.partition(":")[0]: reading for reading in found}
 
     def turn(self) -> Turn:

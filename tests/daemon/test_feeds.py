@@ -2,15 +2,13 @@
 
 from __future__ import annotations
 
-from pathlib import Path
-
 import pytest
 
-from agewatch.clock import StoppedClock
-from agewatch.daemon.feeds import take_in
+from agewatch.clock import ReplayClock
+from agewatch.daemon.feeds import past_until_s, take_in
 from agewatch.daemon.status import last_tick
 from agewatch.plant.tables import Reject
-from tests.daemon.samples import COIL_HEAD, FRESH, HOUR_S, OLD, TinyPlant, temperatures
+from tests.daemon.samples import COIL_HEAD, DAY_S, FRESH, HOUR_S, OLD, TinyPlant, temperatures
 
 
 def only_reject(plant: TinyPlant) -> Reject:
@@ -158,15 +156,20 @@ def test_many_rejects_are_alarmed(plant: TinyPlant) -> None:
     assert len(plant.rejects()) == 3
 
 
-def test_rows_to_come_of_a_replayed_past(plant: TinyPlant, tmp_path: Path) -> None:
-    """Where the past is replayed, readings that the world knows already count when their time has come."""
-    world = StoppedClock(plant.clock.now_s() + 30 * 24 * HOUR_S)
-    plant.write("temps.csv", temperatures("T1", "T2", until_s=world.now_s()))
+def test_rows_to_come_of_a_replayed_past(plant: TinyPlant) -> None:
+    """Where the past is replayed, readings that are still to come are taken in and count when their time has come."""
+    clock = ReplayClock(plant.clock.now_s(), 1.0)
+    plant.write("temps.csv", temperatures("T1", "T2", until_s=plant.clock.now_s() + 30 * DAY_S))
     for feed in plant.loaded.settings.feed:
-        take_in(plant.store, feed, tmp_path, plant.clock, world)
+        take_in(plant.store, feed, plant.folder, plant.clock, past_until_s(clock))
     assert plant.rejects() == []
     plant.turn()
     with plant.store.read() as view:
         tick = last_tick(view)
     assert tick is not None
     assert tick.reading_s == plant.clock.now_s()
+
+
+def test_now_is_the_end_of_the_past(plant: TinyPlant) -> None:
+    """With a clock that is not replayed nothing after now has happened."""
+    assert past_until_s(plant.clock) == plant.clock.now_s()
