@@ -13,7 +13,7 @@ GATES = (
     ("style", [SCRIPTS / "ruff", "check", "."]),
     ("layout", [SCRIPTS / "ruff", "format", "--check", "--quiet", "."]),
     ("types", [SCRIPTS / "mypy"]),
-    ("arrows between rooms", [SCRIPTS / "lint-imports", "--no-logo"]),
+    ("arrows between rooms", [SCRIPTS / "lint-imports"]),
     ("tests", [sys.executable, "-m", "pytest", *sys.argv[1:]]),
 )
 

@@ -91,17 +91,17 @@ def return_quantiles_s(stock: Stock, state: Now) -> Floats:
     varies = np.flatnonzero(_noise_varies(stock))
     some_needed = needed.take(varies)
     returns_s = np.empty((len(PROBABILITIES), count))
-    before = np.full(count, np.nan)
+    sharp = not (noise.any() or stock.spreads.needed_mpa.any() or stock.spreads.log_saturation.any())
     for place, probability in enumerate(PROBABILITIES):
+        if place and sharp and not len(varies):
+            returns_s[place] = returns_s[0]
+            continue
         level = log_locking_levels(needed, noise, probability) - shift
         for _ in range(_PASSES if len(varies) else 0):
             at_s, exposure_s = approach(stock.journey, stock.steels, ends, varies, np.exp(level[varies]))
             then, moved = noise_of(stock, state, varies, at_s, exposure_s)
             level[varies] = log_locking_levels(some_needed, then, probability) - moved
-        returns_s[place] = returns_s[place - 1]
-        other = np.flatnonzero(level != before)  # without spreads the quantiles are one
-        returns_s[place, other] = return_s(stock.journey, stock.steels, ends, other, np.exp(level[other]))
-        before = level
+        returns_s[place] = return_s(stock.journey, stock.steels, ends, everyone, np.exp(level))
     return returns_s
 
 

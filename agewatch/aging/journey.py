@@ -136,6 +136,9 @@ class Journey:
 
         Counted on settled coils: what an excess adds rests on the coil's own temperature.
         """
+        curves = self.field.curves
+        if not (curves.estimated & (curves.knot_s < at_s.max(initial=-np.inf))).any():
+            return np.zeros(len(self.first_piece))
         pieces = self.pieces
         until_s = np.clip(at_s[pieces.coil], pieces.start_s, pieces.end_s)
         channel = self.channel[pieces.coil, 0]

@@ -160,14 +160,14 @@ def log_locking_levels(needed: Needed, noise: Floats, probability: float) -> Flo
     """Median ln g at which P(returned) reaches `probability`, (n,); inf: it never does.
 
     Coils that share their spreads are read off one table over needed rise and noise; without any spread the level
-    is Λ itself.
+    is Λ itself, whatever the probability.
     """
-    plain = needed.threshold().log_locking(0.0)
-    level = np.where(np.isnan(plain), np.inf, plain)
-    uncertain = ~np.isnan(plain) & (
-        (noise > _SHARP) | (needed.spread_mpa > 0) | (needed.log_saturation_spread > 0)
-    )
-    rows = np.flatnonzero(uncertain)
+    level = np.full(len(noise), np.inf)
+    limited = ~np.isnan(needed.mean_mpa)
+    uncertain = (noise > _SHARP) | (needed.spread_mpa > 0) | (needed.log_saturation_spread > 0)
+    sharp = np.flatnonzero(limited & ~uncertain)
+    level[sharp] = needed.take(sharp).threshold().log_locking(0.0)
+    rows = np.flatnonzero(limited & uncertain)
     for kind in np.unique(needed.kind[rows]):
         own = rows[needed.kind[rows] == kind]
         level[own] = _levels_of_kind(needed.take(own), noise[own], probability)

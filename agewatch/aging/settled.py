@@ -28,13 +28,13 @@ from agewatch.aging.kinetics import GAS_CONSTANT, Floats, rate, rate_slope
 Rows = NDArray[np.intp]
 
 SERIES_TERMS = 7
-SERIES_LIMIT_K = 8.0
+SERIES_LIMIT_K = 10.0
 """Largest excess for which the series serves: its error is then below 1e-4 of what the excess adds."""
 _UNFELT_K = 1e-4
 """An excess below this adds less than a second."""
 _FELT_LAGS = 20.0
 """Time constants after which no excess is felt."""
-_CLASS_STEP = 0.2
+_CLASS_STEP = 0.35
 """Distance of neighbouring classes in ln τ."""
 _STENCIL = 4
 _CHUNK = 256

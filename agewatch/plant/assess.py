@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 from typing import Any
@@ -27,7 +28,8 @@ from agewatch.plant.steels import (
 )
 from agewatch.plant.verdicts import NO_PART, Facts, judge, unassessable
 
-_BATCH_COILS = 65_536
+_LEAST_BATCH_COILS = 10_000
+"""Fewer coils are not worth a thread of their own."""
 
 MODEL = "agewatch-1"
 """Version of the model: changed whenever the same inputs would give other numbers."""
@@ -133,7 +135,8 @@ def _in_batches(
         own = legs.of_coils(int(batch[0]), int(batch[-1]) + 1)
         return _evaluate(_joined(inventory.take(batch), own, field, air, settings, at_s), settings)
 
-    batches = np.array_split(np.arange(len(inventory)), -(-len(inventory) // _BATCH_COILS))
+    count = min(os.cpu_count() or 1, -(-len(inventory) // _LEAST_BATCH_COILS))
+    batches = np.array_split(np.arange(len(inventory)), count)
     with ThreadPoolExecutor() as threads:
         parts = list(threads.map(evaluate, batches))
     columns = {name: np.concatenate([part[0][name] for part in parts]) for name in parts[0][0]}
