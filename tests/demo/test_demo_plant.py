@@ -11,8 +11,8 @@ import numpy as np
 import pytest
 
 from agewatch.assemble import AssessedOnce, assess_once, open_plant
-from agewatch.clock import StoppedClock, SystemClock
-from agewatch.daemon.feeds import read_feeds
+from agewatch.clock import ReplayClock
+from agewatch.daemon.feeds import past_until_s, read_feeds
 from agewatch.plant.assessment import Verdict
 from agewatch.plant.settings_file import LoadedSettings
 from agewatch.store import open_store, queries
@@ -59,8 +59,9 @@ def test_keeps_its_bad_rows(plant: LoadedSettings, tmp_path: Path) -> None:
     """Each row that is bad on purpose is kept with its reason, and nothing else is."""
     start = plant.settings.clock.start
     assert start is not None
+    clock = ReplayClock(start.timestamp(), rate=1.0)
     with open_store("sqlite:///scratch.db", tmp_path) as store:
-        read_feeds(store, plant.settings.feed, plant.folder, StoppedClock(start.timestamp()), SystemClock())
+        read_feeds(store, plant.settings.feed, plant.folder, clock, past_until_s(clock))
         with store.read() as view:
             kept = [stored.reject for stored in queries.open_rejects(view)]
     assert Counter((one.source, one.column) for one in kept) == {
