@@ -3,19 +3,26 @@
 from __future__ import annotations
 
 import logging
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from contextlib import contextmanager
 from dataclasses import dataclass
 from pathlib import Path
 from random import Random
 from tempfile import TemporaryDirectory
 from typing import TYPE_CHECKING
 
+from agewatch.board.control import ask_daemon
 from agewatch.clock import Clock, ReplayClock, StoppedClock, SystemClock, rfc3339
+from agewatch.daemon.actions import answer
+from agewatch.daemon.control import Reply, Request, is_listening
 from agewatch.daemon.cycle import assess_store
 from agewatch.daemon.daemon import Daemon, Surroundings
 from agewatch.daemon.delivering import Receiver
+from agewatch.daemon.desk import Desk
 from agewatch.daemon.feeds import FeedReading, past_until_s, read_feeds
+from agewatch.daemon.peers import own_actor
 from agewatch.daemon.status import last_tick
+from agewatch.errors import ControlError
 from agewatch.messages import signing_secret
 from agewatch.plant.assessment import Assessment
 from agewatch.plant.settings import Settings
@@ -25,6 +32,9 @@ from agewatch.store import Store, View, open_store, sqlite_version, writes
 if TYPE_CHECKING:
     from agewatch.board.app import BoardApp
     from agewatch.messages.sink import Show, Sink
+
+Ask = Callable[[Request], Reply]
+"""Puts one request."""
 
 _log = logging.getLogger(__name__)
 
@@ -90,6 +100,22 @@ def build_daemon(loaded: LoadedSettings, environment: Mapping[str, str]) -> Daem
     return daemon
 
 
+@contextmanager
+def open_desk(loaded: LoadedSettings) -> Iterator[Ask]:
+    """Where requests can be put: to the running daemon, or to the store itself where none runs.
+
+    Raises ControlError and StoreError.
+    """
+    settings, folder = loaded.settings, loaded.folder
+    socket_path = folder / settings.daemon.control_socket
+    if is_listening(socket_path):
+        yield lambda request: _asked(socket_path, request)
+        return
+    with open_store(settings.store.url, folder) as store:
+        desk = Desk(store, settings, StoppedClock(_now_s(settings, store)))
+        yield lambda request: answer(desk, request, own_actor())
+
+
 def build_board(loaded: LoadedSettings) -> BoardApp:
     """The supervisor's screen over the plant's store and daemon, neither of which has to be there yet."""
     from agewatch.board.app import BoardApp  # noqa: PLC0415 - the daemon does without the screen library
@@ -103,6 +129,13 @@ def build_sink(secrets: Sequence[str], port: int, show: Show) -> Sink:
     from agewatch.messages.sink import Sink  # noqa: PLC0415 - only who receives needs a server
 
     return Sink(secrets, SystemClock(), show, port=port)
+
+
+def _asked(socket_path: Path, request: Request) -> Reply:
+    try:
+        return Reply(True, ask_daemon(socket_path, request))
+    except ControlError as error:
+        return Reply(False, str(error))
 
 
 def _assess_in(store: Store, loaded: LoadedSettings, at_s: float, *, keep: bool) -> AssessedOnce:

@@ -28,7 +28,7 @@ Assess = Callable[..., tuple[int, str, str]]
 @pytest.fixture
 def plant(tmp_path: Path) -> TinyPlant:
     one = TinyPlant(tmp_path)
-    one.store.close()
+    one.close()
     return one
 
 

@@ -17,7 +17,7 @@ Check = Callable[..., tuple[int, str, str]]
 @pytest.fixture
 def plant(tmp_path: Path) -> TinyPlant:
     one = TinyPlant(tmp_path)
-    one.store.close()
+    one.close()
     one.store.path.unlink()
     return one
 

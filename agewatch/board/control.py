@@ -14,7 +14,7 @@ ANSWER_WITHIN_S = 10.0
 _ANSWER_LIMIT = 65_536
 
 
-def ask_daemon(path: Path, request: Mapping[str, str], within_s: float = ANSWER_WITHIN_S) -> str:
+def ask_daemon(path: Path, request: Mapping[str, object], within_s: float = ANSWER_WITHIN_S) -> str:
     """What the daemon says to `request` when it has done it.
 
     Raises ControlError with a sentence for the person who asked, when it is not running, refuses, or is silent

@@ -3,15 +3,12 @@
 from __future__ import annotations
 
 import re
-import signal
 import subprocess
-import sys
 import tempfile
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from pathlib import Path
 from time import monotonic
-from types import FrameType
 from typing import Any
 
 import click
@@ -20,6 +17,7 @@ from agewatch.alarms import Alarm
 from agewatch.assemble import build_board, build_sink, open_plant
 from agewatch.cli.assessment_output import summary
 from agewatch.cli.demo_plant import Process, copy_plant, daemon, end, write_settings
+from agewatch.cli.demo_signals import EndedBySignals
 from agewatch.cli.options import debug_option
 from agewatch.cli.tables import text_table
 from agewatch.errors import AgeWatchError, StoreError
@@ -62,11 +60,11 @@ def command(headless: bool, for_s: float, keep: bool) -> None:
     plant time pass in minutes.
     """
     until_s = monotonic() + for_s
-    with _scratch(keep) as folder, _ended_by_signals():
+    with EndedBySignals() as signals, _scratch(keep) as folder:
         secret = copy_plant(folder)
         with build_sink([secret], 0, lambda _: None) as sink:
             loaded = open_plant(write_settings(folder, sink.url))
-            with daemon(loaded.files[0], folder / LOG) as process:
+            with daemon(loaded.files[0], folder / LOG, signals) as process:
                 _wait_for_assessment(loaded, process)
                 if headless:
                     _let_it_run(process, until_s, folder)
@@ -83,29 +81,13 @@ def command(headless: bool, for_s: float, keep: bool) -> None:
 def _scratch(keep: bool) -> Iterator[Path]:
     if keep:
         folder = Path(tempfile.mkdtemp(prefix="agewatch-demo-"))
-        yield folder
-        click.echo(f"kept: {folder}", err=True)
+        try:
+            yield folder
+        finally:
+            click.echo(f"kept: {folder}", err=True)
     else:
         with tempfile.TemporaryDirectory(prefix="agewatch-demo-") as scratch:
             yield Path(scratch)
-
-
-@contextmanager
-def _ended_by_signals() -> Iterator[None]:
-    """A signal that would kill this process ends it in order, so that the daemon is not left behind."""
-    signals = (signal.SIGTERM, signal.SIGHUP)
-
-    def leave(number: int, _: FrameType | None) -> None:
-        for each in signals:
-            signal.signal(each, signal.SIG_IGN)
-        sys.exit(128 + number)
-
-    before = {each: signal.signal(each, leave) for each in signals}
-    try:
-        yield
-    finally:
-        for each, handler in before.items():
-            signal.signal(each, handler)
 
 
 def _wait_for_assessment(loaded: LoadedSettings, process: Process) -> None:

@@ -12,6 +12,7 @@ from contextlib import contextmanager
 from pathlib import Path
 
 import agewatch
+from agewatch.cli.demo_signals import EndedBySignals
 from agewatch.errors import UsageError
 from agewatch.messages.signing import secret_of
 
@@ -53,22 +54,17 @@ secret_file = "{SECRET_FILE}"
 
 
 @contextmanager
-def daemon(config: Path, log: Path) -> Iterator[Process]:
+def daemon(config: Path, log: Path, signals: EndedBySignals) -> Iterator[Process]:
     """A daemon of its own process for as long as the block runs; it is ended by its process id on every path."""
-    paths = [str(_PACKAGE.parent), *filter(None, [os.environ.get("PYTHONPATH")])]
-    with log.open("wb") as said:
-        process = subprocess.Popen(  # noqa: S603 - this very program
-            [sys.executable, "-m", "agewatch", "run", "--config", str(config)],
-            stdin=subprocess.DEVNULL,
-            stdout=said,
-            stderr=said,
-            env={**os.environ, "PYTHONPATH": os.pathsep.join(paths)},
-            start_new_session=True,
-        )
+    process: Process | None = None
     try:
+        with signals.held():  # else a signal could leave a process whose id nobody knows
+            process = _started(config, log)
         yield process
     finally:
-        end(process)
+        if process is not None:
+            with signals.held():
+                end(process)
 
 
 def end(process: Process) -> int:
@@ -80,6 +76,19 @@ def end(process: Process) -> int:
     except subprocess.TimeoutExpired:
         process.kill()
         return process.wait()
+
+
+def _started(config: Path, log: Path) -> Process:
+    paths = [str(_PACKAGE.parent), *filter(None, [os.environ.get("PYTHONPATH")])]
+    with log.open("wb") as said:
+        return subprocess.Popen(  # noqa: S603 - this very program
+            [sys.executable, "-m", "agewatch", "run", "--config", str(config)],
+            stdin=subprocess.DEVNULL,
+            stdout=said,
+            stderr=said,
+            env={**os.environ, "PYTHONPATH": os.pathsep.join(paths)},
+            start_new_session=True,
+        )
 
 
 def _original() -> Path:

@@ -25,6 +25,7 @@ def command(config: Path, log: Literal["text", "json"]) -> None:
 
     It is the only writer of its store, and ends cleanly at SIGTERM or SIGINT.
     """
+    loaded = open_plant(config)
     set_up_log(log, debug=bool(click.get_current_context().meta.get(DEBUG)))
     with EndingSignals() as signals:
-        run(build_daemon(open_plant(config), os.environ), Notify(os.environ), signals)
+        run(build_daemon(loaded, os.environ), Notify(os.environ), signals)

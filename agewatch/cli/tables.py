@@ -9,7 +9,8 @@ from collections.abc import Collection, Iterable, Iterator, Sequence
 from agewatch.messages.inert import inert
 
 _CELL_LIMIT = 100
-_STARTS_A_FORMULA = ("=", "+", "-", "@", "\t", "\r", "\0")
+_STARTS_A_FORMULA = ("=", "+", "-", "@", "\t", "\r", "\0", "'")
+"""The last one so that nothing is disarmed that `armed` would not know again."""
 
 
 def text_table(
@@ -33,10 +34,17 @@ def csv_line(cells: Iterable[object]) -> str:
     return line.getvalue()
 
 
+def disarmed(text: str) -> str:
+    """Text that no spreadsheet takes for a formula (CWE-1236); `armed` gives it back."""
+    return f"'{text}" if text.startswith(_STARTS_A_FORMULA) else text
+
+
+def armed(text: str) -> str:
+    """What `disarmed` was given."""
+    return text[1:] if text.startswith("'") else text
+
+
 def _cell(cell: object) -> object:
     if isinstance(cell, bool):
         return "true" if cell else "false"
-    if not isinstance(cell, str):
-        return cell
-    formula = cell.startswith(_STARTS_A_FORMULA)  # a spreadsheet would take it for one (CWE-1236)
-    return "'" * formula + inert(cell, len(cell))
+    return disarmed(inert(cell, len(cell))) if isinstance(cell, str) else cell

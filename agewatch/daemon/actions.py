@@ -3,55 +3,26 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass
 
 from agewatch.alarms import Acknowledged, AlarmKind, advance
-from agewatch.clock import Clock
 from agewatch.daemon.control import Reply, Request
 from agewatch.daemon.cycle import record, timing_of
+from agewatch.daemon.desk import Desk
+from agewatch.daemon.mending import resubmit
 from agewatch.messages.inert import inert
-from agewatch.plant.records import JournalRow
-from agewatch.plant.settings import Settings
-from agewatch.store import Store, queries, writes
-
-
-@dataclass(frozen=True, slots=True)
-class Desk:
-    """What actions work on."""
-
-    store: Store
-    settings: Settings
-    clock: Clock
-
-    def answer(self, request: Request, actor: str) -> Reply:
-        """Do what is asked for, or say why not; both are journalled. Raises StoreError."""
-        action = ACTIONS.get(str(request.get("action")))
-        if action is None:
-            return self.refuse(request, actor, f"there is no such action; there is {', '.join(ACTIONS)}")
-        reply = action(self, request, actor)
-        return reply if reply.ok else self.refuse(request, actor, reply.said)
-
-    def refuse(self, request: Request, actor: str, reason: str) -> Reply:
-        """Journal that something was asked for and not done. Raises StoreError."""
-        asked = {name: inert(str(request.get(name, ""))) for name in ("action", "kind", "subject")}
-        row = JournalRow(
-            at_s=self.clock.now_s(),
-            topic="daemon",
-            kind="request-refused",
-            subject=asked["action"],
-            actor=actor,
-            before="",
-            after="",
-            reason=reason,
-            detail=asked,
-        )
-        with self.store.write() as tx:
-            writes.append_journal(tx, [row])
-        return Reply(False, reason)
-
+from agewatch.store import queries
 
 Action = Callable[[Desk, Request, str], Reply]
-"""From the request and its actor to the reply. A refusal is journalled by whoever calls."""
+"""From the request and its actor to the reply. A refusal is journalled by `answer`."""
+
+
+def answer(desk: Desk, request: Request, actor: str) -> Reply:
+    """Do what is asked for, or say why not; both are journalled. Raises StoreError."""
+    action = ACTIONS.get(str(request.get("action")))
+    if action is None:
+        return desk.refuse(request, actor, f"there is no such action; there is {', '.join(ACTIONS)}")
+    reply = action(desk, request, actor)
+    return reply if reply.ok else desk.refuse(request, actor, reply.said)
 
 
 def acknowledge(desk: Desk, request: Request, actor: str) -> Reply:
@@ -72,4 +43,4 @@ def acknowledge(desk: Desk, request: Request, actor: str) -> Reply:
     return Reply(True, f"{kind} of {inert(subject)} is acknowledged")
 
 
-ACTIONS: Mapping[str, Action] = {"acknowledge": acknowledge}
+ACTIONS: Mapping[str, Action] = {"acknowledge": acknowledge, "resubmit": resubmit}

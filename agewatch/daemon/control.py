@@ -74,10 +74,10 @@ class ControlSocket:
         self._path.unlink(missing_ok=True)
 
 
-def _clear(path: Path) -> None:
-    """Remove the socket of a daemon that is gone."""
+def is_listening(path: Path) -> bool:
+    """Whether a daemon listens at `path`. Raises ControlError where that cannot be found out."""
     if not path.exists() and not path.is_symlink():
-        return
+        return False
     if not path.is_socket():
         raise ControlError(f"control socket {path}: a file of another kind is there; remove it")
     with socket.socket(socket.AF_UNIX) as probe:
@@ -85,13 +85,21 @@ def _clear(path: Path) -> None:
         try:
             probe.connect(str(path))
         except ConnectionRefusedError:
-            path.unlink()
-            return
+            return False
         except OSError as fault:
             raise ControlError(
-                f"control socket {path}: {fault.strerror or fault}; remove it by hand"
+                f"control socket {path}: {fault.strerror or fault}; see to its rights"
             ) from fault
-    raise ControlError(f"control socket {path}: another daemon listens there; stop it, or give another path")
+    return True
+
+
+def _clear(path: Path) -> None:
+    """Remove the socket of a daemon that is gone."""
+    if is_listening(path):
+        raise ControlError(
+            f"control socket {path}: another daemon listens there; stop it, or give another path"
+        )
+    path.unlink(missing_ok=True)
 
 
 class _Server(ThreadingMixIn, UnixStreamServer):
@@ -164,6 +172,7 @@ def _request(line: bytes) -> Request | str:
         return f"a request is one line, ended within {WAIT_S:.0f} s"
     try:
         request = json.loads(line.partition(b"\n")[0])
+        json.dumps(request, ensure_ascii=False).encode()  # half a character cannot be kept
     except (ValueError, RecursionError):
         return "a request is one JSON object in UTF-8 on one line"
     if not isinstance(request, dict) or not isinstance(request.get("action"), str):

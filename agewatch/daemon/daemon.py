@@ -13,10 +13,11 @@ from time import monotonic
 from agewatch import __version__
 from agewatch.alarms import AGEWATCH, Cleared, Raised
 from agewatch.clock import Clock, ReplayClock
-from agewatch.daemon.actions import Desk
+from agewatch.daemon.actions import answer
 from agewatch.daemon.control import ControlSocket, Reply, Request
 from agewatch.daemon.cycle import Turn, take_turn
 from agewatch.daemon.delivering import Deliverer, Receiver
+from agewatch.daemon.desk import Desk
 from agewatch.daemon.feeds import past_until_s, take_in
 from agewatch.daemon.health import Health
 from agewatch.daemon.housekeeping import HOUSEKEEPING_EVERY, keep_house
@@ -170,7 +171,7 @@ class Daemon:
             deliverer.wake()
 
     def _answer(self, request: Request, actor: str) -> Reply:
-        return self._replied(lambda: self._desk.answer(request, actor))
+        return self._replied(lambda: answer(self._desk, request, actor))
 
     def _refuse(self, actor: str, reason: str) -> Reply:
         return self._replied(lambda: self._desk.refuse({}, actor, reason))

@@ -7,6 +7,7 @@ import signal
 import subprocess
 import sys
 from pathlib import Path
+from shutil import rmtree
 
 from agewatch.plant.assessment import Verdict
 from tests.processes import LONG_S, agewatch, environment
@@ -27,7 +28,7 @@ def processes_about(text: str) -> list[str]:
 
 def test_headless_demo_shows_the_whole_job() -> None:
     """Every verdict is there, alarms stand, every message verifies, and nothing is left running or lying about."""
-    run = agewatch("demo", "--headless", "--for", "10s", "--keep")
+    run = agewatch("demo", "--headless", "--for", "6s", "--keep")
     assert run.returncode == 0, run.stderr
     counts = {word: int(count) for count, word in re.findall(r"(\d+) (\w+)", run.stdout.splitlines()[0])}
     assert all(counts[verdict.word] > 0 for verdict in Verdict)
@@ -37,6 +38,7 @@ def test_headless_demo_shows_the_whole_job() -> None:
     folder = run.stderr.strip().removeprefix("kept: ")
     assert (Path(folder) / "var" / "agewatch.db").is_file()
     assert processes_about(folder) == []
+    rmtree(folder)
 
 
 def test_demo_that_is_ended_ends_its_daemon() -> None:

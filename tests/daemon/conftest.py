@@ -14,4 +14,4 @@ from tests.daemon.samples import ENDPOINT, TinyPlant
 def plant(tmp_path: Path) -> Iterator[TinyPlant]:
     one = TinyPlant(tmp_path, endpoint=ENDPOINT)
     yield one
-    one.store.close()
+    one.close()

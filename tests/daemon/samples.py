@@ -87,7 +87,21 @@ class TinyPlant:
         self.write("temps.csv", temperatures("T1", "T2"))
         self.loaded: LoadedSettings = load_settings(folder / "plant.toml")
         self.store: Store = open_store(self.loaded.settings.store.url, folder)
+        self.is_open = True
         self.clock = StoppedClock(NOW_S)
+
+    def reopen(self) -> Store:
+        """Open the store again after it was closed."""
+        self.close()
+        self.store = open_store(self.loaded.settings.store.url, self.folder)
+        self.is_open = True
+        return self.store
+
+    def close(self) -> None:
+        """Leave the store to others."""
+        if self.is_open:
+            self.store.close()
+            self.is_open = False
 
     def write(self, name: str, content: str | bytes) -> Path:
         path = self.folder / name

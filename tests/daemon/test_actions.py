@@ -4,8 +4,9 @@ from __future__ import annotations
 
 import pytest
 
-from agewatch.daemon.actions import ACTIONS, Desk
+from agewatch.daemon.actions import ACTIONS, answer
 from agewatch.daemon.control import Reply, Request
+from agewatch.daemon.desk import Desk
 from tests.daemon.samples import HOUR_S, NOW_S, TinyPlant
 
 NOVAK = "user:novak"
@@ -13,7 +14,7 @@ HELD = {"action": "acknowledge", "kind": "returned-in-store", "subject": "C-OLD"
 
 
 def ask(plant: TinyPlant, request: Request) -> Reply:
-    return Desk(plant.store, plant.loaded.settings, plant.clock).answer(request, NOVAK)
+    return answer(Desk(plant.store, plant.loaded.settings, plant.clock), request, NOVAK)
 
 
 def test_acknowledge(plant: TinyPlant) -> None:
@@ -38,11 +39,19 @@ def test_acknowledge(plant: TinyPlant) -> None:
 @pytest.mark.parametrize(
     ("request_", "said"),
     [
-        ({"action": "launch"}, "no such action; there is acknowledge"),
+        ({"action": "launch"}, "no such action; there is acknowledge, resubmit"),
         ({"action": "acknowledge"}, "needs the kind and the subject"),
         ({**HELD, "kind": "bad-weather"}, "needs the kind and the subject"),
         ({**HELD, "subject": ["C-OLD"]}, "needs the kind and the subject"),
         ({**HELD, "reason": 7}, "needs the kind and the subject"),
+        ({"action": "resubmit"}, "the text of each row by the number"),
+        ({"action": "resubmit", "mended": ["row"]}, "the text of each row by the number"),
+        ({"action": "resubmit", "mended": {"one": "row"}}, "the text of each row by the number"),
+        ({"action": "resubmit", "mended": {"1": 7}}, "the text of each row by the number"),
+        (
+            {"action": "resubmit", "mended": {"99": "row"}},
+            "0 taken in, 1 still rejected: 99: no such row waits",
+        ),
         ({**HELD, "subject": "C-FRESH"}, "no alarm returned-in-store of C-FRESH waits"),
         ({**HELD, "subject": "\x1b[2J"}, "no alarm returned-in-store of \\x1b[2J waits"),
     ],

@@ -78,6 +78,7 @@ def test_request_is_answered(listener: Listener) -> None:
         (b'{"kind": "k"}\n', '"action"'),
         (b'{"action": 7}\n', '"action"'),
         (b"\xff\xfe\n", "JSON object"),
+        (b'{"action": "\\ud800"}\n', "JSON object"),
         (b"[" * 60_000 + b"\n", "JSON object"),
         (b'{"action": "' + b"x" * control.LINE_LIMIT + b'"}\n', "at most"),
     ],
