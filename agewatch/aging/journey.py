@@ -10,12 +10,8 @@ from numpy.typing import NDArray
 from agewatch.aging.kinetics import GAS_CONSTANT, Floats
 from agewatch.aging.settled import SERIES_LIMIT_K, Rows, SettledField, Standing
 
-_BATCH_STEPS = 60_000
-"""Far pieces are integrated together in batches of about this many steps, those of like length together."""
-_STRIDE = 2
-"""Knots from one node to the next along a far piece."""
-_LEAST_SKEW = 1e-3
-"""A step shorter than this share of its pair counts as none."""
+_FAR_NODES = np.linspace(0.0, 1.0, 25)
+"""Nodes along a far piece, as shares of it."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -214,76 +210,41 @@ def _gathered(
 
 
 def _far_exposure_s(field: SettledField, channel: Rows, pieces: Pieces, at_s: Floats) -> Floats:
-    """Exposure from the start of far pieces to `at_s`, along every second knot of the curve."""
-    exposure_s = np.zeros(channel.shape)
-    first = field.curves.locate(pieces.standing.location, pieces.start_s)
-    inner = (field.curves.locate(pieces.standing.location, at_s) - first + _STRIDE - 1) // _STRIDE
-    order = np.argsort(inner, kind="stable")
-    for rows in np.array_split(order, max(1, min(len(order), int(inner.sum()) // _BATCH_STEPS))):
-        knot = first[rows, None] + 1 + _STRIDE * np.arange(int(inner[rows].max()))
-        here = pieces.take(rows)
-        for slot in range(channel.shape[1]):
-            has = np.flatnonzero(channel[rows, slot] >= 0)
-            exposure_s[rows[has], slot] = _along_knots_s(
-                field, channel[rows[has], slot], here.take(has), knot[has], at_s[rows[has]]
-            )
-    return exposure_s
-
-
-def _along_knots_s(field: SettledField, channel: Rows, pieces: Pieces, knot: Rows, at_s: Floats) -> Floats:
-    """Exposure from the start, over the knots (n, m) that lie before `at_s`, to `at_s`, in one channel (n,).
+    """Exposure from the start of far pieces to `at_s`, s, (n, n_channels).
 
     Notes
     -----
     ``∫ rate(U + δ) dt = ∫ R dP``: P, what a settled coil gathers, has all the weather's roughness and is known
-    exactly; the ratio R = rate(U + δ)/rate(U) is smooth, and is integrated against P by Simpson's rule. Knots beyond
-    `at_s`, which fill up the shorter rows, become steps of no length.
+    exactly; the ratio R = rate(U + δ)/rate(U) is smooth, and is integrated against P by Simpson's rule, at nodes that
+    lie half-way between even in time and even in the excess δ.
     """
-    standing = pieces.standing
-    begin_k, begin_s = field.settled(channel, standing, pieces.start_s)
-    end_k, end_s = field.settled(channel, standing, at_s)
-    knot_s, knot_k, knot_exposure_s = field.settled_at_knots(channel, standing, knot)
-    beyond = knot_s >= at_s[:, None]
-    node_s = _between(pieces.start_s, np.where(beyond, at_s[:, None], knot_s), at_s)
-    settled_k = _between(begin_k, np.where(beyond, end_k[:, None], knot_k), end_k)
-    gathered_s = _between(begin_s, np.where(beyond, end_s[:, None], knot_exposure_s), end_s)
-    elapsed_s = node_s - pieces.start_s[:, None]
-    coil_k = settled_k + pieces.excess_k[:, None] * np.exp(-elapsed_s / standing.tau_s[:, None])
-    quotient_k = np.array(field.activation_j_mol)[channel][:, None] / GAS_CONSTANT
-    ratio = settled_k / coil_k * np.exp(quotient_k * (1.0 / settled_k - 1.0 / coil_k))
-    return _simpson(ratio, np.diff(gathered_s, axis=1))
-
-
-def _between(begin: Floats, inner: Floats, end: Floats) -> Floats:
-    """`inner` (n, m) with a column before and one behind."""
-    return np.concatenate([begin[:, None], inner, end[:, None]], axis=1)
+    standing, far_k = pieces.standing, pieces.excess_k[:, None]
+    span_s = (at_s - pieces.start_s)[:, None]
+    tau_s = standing.tau_s[:, None]
+    even_k = far_k * (1.0 + _FAR_NODES * np.expm1(-span_s / tau_s))
+    elapsed_s = 0.5 * (span_s * _FAR_NODES - tau_s * np.log(even_k / far_k))
+    settled_k, gathered_s = field.settled(channel, standing, pieces.start_s[:, None] + elapsed_s)
+    coil_k = settled_k + far_k * np.exp(-elapsed_s / tau_s)
+    exposure_s = np.zeros(channel.shape)
+    for slot in range(channel.shape[1]):
+        rows = np.flatnonzero(channel[:, slot] >= 0)
+        quotient_k = np.array(field.activation_j_mol)[channel[rows, slot]][:, None] / GAS_CONSTANT
+        here_k, own_k = settled_k[rows], coil_k[rows]
+        ratio = here_k / own_k * np.exp(quotient_k * (1.0 / here_k - 1.0 / own_k))
+        exposure_s[rows, slot] = _simpson(ratio, np.diff(gathered_s[slot][rows], axis=1))
+    return exposure_s
 
 
 def _simpson(values: Floats, steps: Floats) -> Floats:
-    """∫ of `values` at the nodes (n, m + 1) over uneven `steps` (n, m): parabolas over pairs of steps, (n,).
-
-    Where one step of a pair has no length the other is taken by its logarithmic mean, which is exact for an
-    exponential.
-    """
-    if steps.shape[1] % 2:
-        steps = np.concatenate([steps, np.zeros((len(steps), 1))], axis=1)
-        values = np.concatenate([values, values[:, -1:]], axis=1)
+    """∫ of `values` at the nodes (n, m + 1) over uneven `steps` (n, m), m even: parabolas over pairs of steps, (n,)."""
     first, second = steps[:, ::2], steps[:, 1::2]
     left, middle, right = values[:, :-2:2], values[:, 1:-1:2], values[:, 2::2]
+    both = first + second
     with np.errstate(divide="ignore", invalid="ignore"):
         skew = second / first
-        both = first + second
         pair = (
             both
             / 6.0
             * ((2.0 - skew) * left + (2.0 + skew + 1.0 / skew) * middle + (2.0 - 1.0 / skew) * right)
         )
-        odd = np.where(second > 0, second * _log_mean(middle, right), first * _log_mean(left, middle))
-    whole = (first > _LEAST_SKEW * both) & (second > _LEAST_SKEW * both)
-    return np.asarray(np.where(whole, pair, odd).sum(axis=1))
-
-
-def _log_mean(begin: Floats, end: Floats) -> Floats:
-    growth = np.log(end / begin)
-    near = np.abs(growth) < 1e-4
-    return np.where(near, 0.5 * (begin + end), (end - begin) / np.where(near, 1.0, growth))
+    return np.asarray(np.where(both > 0, pair, 0.0).sum(axis=1))

@@ -122,24 +122,13 @@ class SettledField:
         """U at `at_s`, K, (n,)."""
         return self._place(standing, at_s).settled_k
 
-    def settled(self, channel: Rows, standing: Standing, at_s: Floats) -> tuple[Floats, Floats]:
-        """U (K) and what a settled coil has gathered since the curve began (s), at `at_s`, (n,); `channel` (n,)."""
+    def settled(self, channel: Rows, standing: Standing, at_s: Floats) -> tuple[Floats, list[Floats]]:
+        """U (K), and per channel what a settled coil has gathered since the curve began (s), at m times, (n, m)."""
         place = self._place(standing, at_s)
-        return place.settled_k, self._settled_exposure_s(channel, place)
-
-    def settled_at_knots(
-        self, channel: Rows, standing: Standing, knot: Rows
-    ) -> tuple[Floats, Floats, Floats]:
-        """Time (s), U (K) and what a settled coil has gathered (s) at knots (n, m); past the last, the last."""
-        n_locations, n_knots = self.curves.knot_s.shape
-        location, knot = standing.location[:, None], np.minimum(knot, n_knots - 1)
-        row = knot * n_locations + location
-        gathered_row = row + channel[:, None] * (n_knots * n_locations)
-        return (
-            self.curves.knot_s.reshape(-1).take(location * n_knots + knot),
-            _between_classes(self.settled_k, row, standing),
-            _between_classes(self.exposure_s, gathered_row, standing),
-        )
+        return place.settled_k, [
+            self._settled_exposure_s(np.maximum(channel[:, slot, None], 0), place)
+            for slot in range(channel.shape[1])
+        ]
 
     def moment(
         self, channel: Rows, standing: Standing, at_s: Floats, excess_k: Floats
@@ -227,17 +216,19 @@ class SettledField:
         settled_k = air_now_k - lead_k + (begin_k - begin_air_k + lead_k) * np.exp(-elapsed_s / tau_s)
         return _Place(
             standing,
+            location,
             knot,
             elapsed_s,
-            elapsed_s / step_s,
+            step_s - elapsed_s,
             begin_k,
             settled_k,
             (begin_air_k - begin_k) / tau_s,
             (air_now_k - settled_k) / tau_s,
+            begin_air_k + air_slope * step_s,
         )
 
     def _settled_exposure_s(self, channel: Rows, place: _Place) -> Floats:
-        row = (channel * len(self.settled_k) + place.knot) * len(self.curves.air_k) + place.standing.location
+        row = (channel * len(self.settled_k) + place.knot) * len(self.curves.air_k) + place.location
         activation = np.array(self.activation_j_mol)[channel]
         begin, end = rate(place.begin_k, activation), rate(place.settled_k, activation)
         begin_gain = begin * rate_slope(place.begin_k, activation) * place.begin_slope
@@ -247,24 +238,28 @@ class SettledField:
         return _between_classes(self.exposure_s, row, place.standing) + since_knot_s
 
     def _still_to_add_s(self, channel: Rows, place: _Place, excess_k: Floats) -> Floats:
-        """What an excess adds from here on, s: H_k by a straight line between knots."""
+        """What an excess adds from here on, s: to the next knot by its own rate, from there by the series."""
         to_add_s = np.zeros(len(excess_k))
         felt = np.flatnonzero(np.abs(excess_k) > _UNFELT_K)
         if not len(felt):
             return to_add_s
         place, channel, excess_k = place.take(felt), channel[felt], excess_k[felt]
+        tau_s = place.standing.tau_s
+        next_excess_k = excess_k * np.exp(-place.left_s / tau_s)
         n_locations, n_classes = self.settled_k.shape[1:]
-        row = (channel * self.series.shape[1] + place.knot) * n_locations + place.standing.location
+        next_row = (place.knot + 1) * n_locations + place.location
+        next_k = _between_classes(self.settled_k, next_row, place.standing)
+        activation = np.array(self.activation_j_mol)[channel]
+        here = _excess_rate(place.settled_k, place.slope, excess_k, tau_s, activation)
+        there = _excess_rate(next_k, (place.next_air_k - next_k) / tau_s, next_excess_k, tau_s, activation)
+        to_knot_s = place.left_s * (0.5 * (here[0] + there[0]) + place.left_s / 12.0 * (here[1] - there[1]))
+        known = np.minimum(place.knot + 1, self.series.shape[1] - 1)
+        row = (channel * self.series.shape[1] + known) * n_locations + place.location
         base = (row * n_classes + place.standing.first) * SERIES_TERMS
-        stencils = sliding_window_view(self.series.reshape(-1), _STENCIL * SERIES_TERMS)
-        begin = stencils[base]
-        end = stencils[base + n_locations * n_classes * SERIES_TERMS]
-        end -= begin
-        end *= place.share.astype(np.float32)[:, None]
-        begin += end
-        by_class = begin.reshape(len(felt), _STENCIL, SERIES_TERMS)
+        stencil = sliding_window_view(self.series.reshape(-1), _STENCIL * SERIES_TERMS)[base]
+        by_class = stencil.reshape(len(felt), _STENCIL, SERIES_TERMS)
         terms = np.einsum("nk,nkt->nt", place.standing.weight.astype(np.float32), by_class)
-        to_add_s[felt] = _polynomial(terms, excess_k)
+        to_add_s[felt] = to_knot_s + _polynomial(terms, next_excess_k)
         return to_add_s
 
 
@@ -273,24 +268,29 @@ class _Place:
     """Times on the curves: the piece, how far into it, and U with its slope at both ends of that way."""
 
     standing: Standing
+    location: Rows
     knot: Rows
     elapsed_s: Floats
-    share: Floats
+    left_s: Floats
+    """To the next knot."""
     begin_k: Floats
     settled_k: Floats
     begin_slope: Floats
     slope: Floats
+    next_air_k: Floats
 
     def take(self, rows: Rows) -> _Place:
         return _Place(
             self.standing.take(rows),
+            self.location[rows],
             self.knot[rows],
             self.elapsed_s[rows],
-            self.share[rows],
+            self.left_s[rows],
             self.begin_k[rows],
             self.settled_k[rows],
             self.begin_slope[rows],
             self.slope[rows],
+            self.next_air_k[rows],
         )
 
 
@@ -300,6 +300,16 @@ def tau_classes_s(tau_s: Floats) -> Floats:
     count = max(_STENCIL, int(np.ceil((high - low) / _CLASS_STEP)) + 1)
     spread = max(high - low, 0.01)
     return np.asarray(np.exp(low + spread * np.arange(count) / (count - 1)))
+
+
+def _excess_rate(
+    settled_k: Floats, slope_k_s: Floats, excess_k: Floats, tau_s: Floats, activation: Floats
+) -> tuple[Floats, Floats]:
+    """rate(U + δ) − rate(U) and its time derivative (1/s), (n,)."""
+    own_k = settled_k + excess_k
+    own, settled = rate(own_k, activation), rate(settled_k, activation)
+    own_gain = own * rate_slope(own_k, activation) * (slope_k_s - excess_k / tau_s)
+    return own - settled, own_gain - settled * rate_slope(settled_k, activation) * slope_k_s
 
 
 def _polynomial(terms: Floats, excess_k: Floats) -> Floats:
