@@ -83,7 +83,7 @@ class Threshold:
         """
         c2 = (needed_spread_mpa / needed_mpa) ** 2
         variance = c2 + 2.5 * c2**2 + saturation_spread**2
-        with np.errstate(divide="ignore", invalid="ignore"):
+        with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
             skewness = np.where(variance > 0, -3.0 * c2**2 / variance**1.5, 0.0)
         mean = np.log(needed_mpa / saturation_mpa) - 0.5 * c2 - 0.75 * c2**2
         return cls(mean, np.sqrt(variance), skewness)
@@ -98,7 +98,7 @@ class Threshold:
     def quantile_of(self, log_locking: Floats) -> Floats:
         """z at which Λ equals `log_locking`: the inverse of `log_locking` (to third order)."""
         log_fraction = np.log(-np.expm1(-np.exp(np.minimum(log_locking, 700.0))))
-        with np.errstate(divide="ignore", invalid="ignore"):
+        with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
             r = (log_fraction - self.mean) / self.spread
         return np.asarray(r - self.skewness * (np.square(r) - 1.0) / 6.0)
 
@@ -145,12 +145,12 @@ class _Mixture:
         total = np.zeros(len(log_locking))
         rows = self.over_threshold
         noise = self.noise[rows]
-        with np.errstate(divide="ignore", invalid="ignore"):
+        with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
             beyond = log_locking[rows] - self.node_levels
             share = np.where(noise > _SHARP, ndtr(beyond / noise), beyond >= 0)
         total[rows] = _WEIGHTS @ np.nan_to_num(share, nan=0.0)
         rows = self.over_noise
-        with np.errstate(divide="ignore", invalid="ignore"):
+        with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
             z = self.threshold.take(rows).quantile_of(log_locking[rows] + _NODES[:, None] * self.noise[rows])
         total[rows] = _WEIGHTS @ ndtr(z)
         return np.clip(total, 0.0, 1.0)
@@ -218,7 +218,7 @@ def _solved_levels(threshold: Threshold, noise: Floats, probability: float) -> F
     z = float(ndtri(probability))
     mixture = _Mixture.of(threshold, noise)
     low = np.minimum(threshold.log_locking(-_REACH), _MOST_LOG_LOCKING) - _REACH * noise - 1e-9
-    high = np.full_like(low, _MOST_LOG_LOCKING) + _REACH * noise
+    high = np.minimum(threshold.log_locking(_REACH), _MOST_LOG_LOCKING) + _REACH * noise + 1e-9
     never = mixture.probability(high) < probability
     under, over = np.full_like(low, -_REACH) - z, np.full_like(low, _REACH) - z
     for step in range(_BISECTIONS + _FALSE_POSITIONS):
