@@ -11,7 +11,9 @@ from agewatch.board.times import relative, slack, weekday_time
 from agewatch.plant.assessment import Verdict
 
 CAUTION = "An estimate, never a test of this coil. Lifting and moving follow site rules."
-_STARTING_POINT_CAUTION = f"{STARTING_POINT} Starting point: no test of this plant supports the grade yet; its dates may be far out."
+_STARTING_POINT_CAUTION = (
+    f"{STARTING_POINT} Starting point: no test of this plant supports the grade yet; its dates may be far out."
+)
 
 
 @dataclass(frozen=True, slots=True)

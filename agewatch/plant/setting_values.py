@@ -83,6 +83,8 @@ def _encoding(value: str) -> str:
 def _time_format(value: str) -> str:
     if not value:
         return value
+    if "%Z" in value:
+        raise ValueError("%Z names no offset for sure; allowed is %z, or the feed's timezone")
     try:
         back = datetime.strptime(_A_TIME.strftime(value), value)
     except ValueError as fault:
@@ -91,6 +93,12 @@ def _time_format(value: str) -> str:
         raise ValueError(
             'it leaves the day open; allowed is a pattern with day, month and year: "%d.%m.%Y %H:%M"'
         )
+    return value
+
+
+def _path(value: str) -> str:
+    if "\0" in value:
+        raise ValueError("holds a NUL; allowed is the path of a file, or a pattern with * and ?")
     return value
 
 
@@ -126,6 +134,7 @@ TimeZone = Annotated[str, BeforeValidator(_zone)]
 Time = BeforeValidator(_time)
 Encoding = Annotated[str, AfterValidator(_encoding)]
 TimeFormat = Annotated[str, AfterValidator(_time_format)]
+Path = Annotated[str, Field(min_length=1), AfterValidator(_path)]
 Name = Annotated[str, Field(min_length=1, max_length=200)]
 Number = Annotated[float, Field(allow_inf_nan=False)]
 Positive = Annotated[float, Field(gt=0, allow_inf_nan=False)]

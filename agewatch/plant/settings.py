@@ -21,6 +21,7 @@ from agewatch.plant.setting_values import (
     Name,
     NotNegative,
     Number,
+    Path,
     Positive,
     ReceiverUrl,
     Share,
@@ -70,7 +71,7 @@ class Feed(_Section):
     """One source of one canonical table."""
 
     table: Literal["coils", "moves", "presses", "temperatures", "outlook", "lab"]
-    path: Annotated[str, Field(min_length=1)]
+    path: Path
     """File or pattern, relative to the settings file."""
     every: Interval = timedelta(minutes=5)
     timezone: TimeZone = "UTC"

@@ -13,6 +13,7 @@ from textual.widgets import Button, Input, OptionList, Static
 from textual.widgets.option_list import Option
 
 from agewatch.board.inert import inert
+from agewatch.board.widgets.inert_input import InertInput
 
 _CANCEL: BindingType = Binding("escape", "dismiss(None)", "Cancel")
 
@@ -73,7 +74,7 @@ class Ask(ModalScreen[str | None]):
     def compose(self) -> ComposeResult:
         with Vertical(classes="dialog"):
             yield Static(Content(inert(self._question)))
-            yield Input(compact=True)
+            yield InertInput(compact=True)
 
     def on_input_submitted(self, event: Input.Submitted) -> None:
         self.dismiss(event.value.strip() or None)

@@ -208,6 +208,8 @@ class StoreScreen(ListScreen):
         self.set_class(wanted, "panel-open")
         self.set_class(not wanted, "panel-closed")
         self.call_after_refresh(self._show_coil)
+        if not wanted:
+            self.call_after_refresh(self.table.focus)  # on a very short screen the list was hidden meanwhile
 
     def _show_words(self) -> None:
         if self._panel.display:

@@ -34,8 +34,8 @@ class AlarmPanel(SpanText):
         pairs = (
             ("State", self._state(alarm, now_s)),
             ("Why", str(alarm.detail.get("reason", ""))),
-            ("Location", alarm.location),
             ("Do", record.action),
+            ("Location", alarm.location),
             ("By when", record.time_to_respond),
             ("Cause", record.cause),
             ("If left", record.consequence),

@@ -10,6 +10,7 @@ from textual.message import Message
 from textual.widgets import Input, Static
 
 from agewatch.board.look import Span
+from agewatch.board.widgets.inert_input import InertInput
 from agewatch.board.widgets.span_text import SpanLine
 
 
@@ -33,7 +34,7 @@ class FindBar(Horizontal):
 
     def __init__(self, hint: str) -> None:
         super().__init__(id="find")
-        self._input = Input(placeholder=hint, compact=True, id="find-words")
+        self._input = InertInput(placeholder=hint, compact=True, id="find-words")
         self._count = SpanLine(id="find-count")
 
     def compose(self) -> ComposeResult:

@@ -17,7 +17,7 @@ _WORDS = re.compile(r"\S+|\s+")
 
 
 class Paragraph(NamedTuple):
-    """`name` stands in front, in `indent` cells that stay empty on the lines that follow."""
+    """`name`, one of our own words, stands in front, in `indent` cells that stay empty on the lines that follow."""
 
     spans: Line
     name: str = ""
@@ -35,10 +35,12 @@ def wrapped(paragraphs: Iterable[Paragraph], width: int) -> list[Line]:
 
 
 def _wrapped(paragraph: Paragraph, width: int) -> Iterator[Line]:
-    indent = paragraph.indent if paragraph.indent < width // 2 else 0
-    name = Span(f"{paragraph.name:<{indent}}", "quiet")
-    for number, line in enumerate(_filled(paragraph.spans, max(1, width - indent))):
-        yield (name if number == 0 else Span(" " * indent), *line)
+    spans, name, indent = paragraph
+    if indent > width // 2 or len(name) > indent:  # no room beside the name: it begins the text
+        spans, name, indent = (Span(f"{name} " if name else "", "quiet"), *spans), "", 0
+    first = Span(f"{name:<{indent}}", "quiet")
+    for number, line in enumerate(_filled(spans, max(1, width - indent))):
+        yield (first if number == 0 else Span(" " * indent), *line)
 
 
 def _filled(spans: Sequence[Span], width: int) -> Iterator[Line]:
