@@ -12,7 +12,8 @@ from agewatch.plant.assessment import Verdict
 
 CAUTION = "An estimate, never a test of this coil. Lifting and moving follow site rules."
 _STARTING_POINT_CAUTION = (
-    f"{STARTING_POINT} Starting point: no test of this plant supports the grade yet; its dates may be far out."
+    f"{STARTING_POINT} Starting point: no test of this plant supports the grade yet; "
+    "its dates may be far out."
 )
 
 

@@ -31,9 +31,7 @@ TONES: Mapping[str, str] = {
 """Each tone as a style of the screen library; the colours behind the names stand in palette.py."""
 STARTING_POINT = "≈"
 """Stands before a date that rests on a grade which no test of this plant supports yet."""
-STARTING_POINT_LEGEND = (
-    f"{STARTING_POINT} starting point: no test of this plant supports the grade yet; its dates may be far out"
-)
+STARTING_POINT_LEGEND = f"{STARTING_POINT} starting point: no test of this plant supports the grade yet"
 
 
 class Span(NamedTuple):

@@ -105,7 +105,9 @@ def test_the_limit_always_has_room_on_the_scale(returns_d: float, band: float) -
 
 
 @given(st.integers(30, 160), st.integers(8, 50), st.floats(-40, 55), st.floats(-5, 55) | st.just(NAN))
-def test_every_size_from_the_least_up_is_filled(width: int, height: int, returns_d: float, press_d: float) -> None:
+def test_every_size_from_the_least_up_is_filled(
+    width: int, height: int, returns_d: float, press_d: float
+) -> None:
     """Both charts have exactly the cells that they were given."""
     trace = _trace(returns_d=returns_d, press_d=press_d)
     for picture in (ype_picture, temperature_picture):
@@ -118,7 +120,9 @@ def test_temperatures_have_a_scale_even_when_the_air_stands_still(swing_c: float
     """A constant is a level line, not a fault; the coil and the air are named."""
     trace = _trace()
     air_c = 22.0 + swing_c * np.sin(trace.at_s / 9e4)
-    text = _text(temperature_picture(replace(trace, air_c=air_c, coil_c=np.full_like(air_c, 22.0)), 40, 8, PRAGUE))
+    text = _text(
+        temperature_picture(replace(trace, air_c=air_c, coil_c=np.full_like(air_c, 22.0)), 40, 8, PRAGUE)
+    )
     assert "coil" in text[0]
     assert "air" in text[0]
     assert any(line[:5].strip() for line in text[1:-2])

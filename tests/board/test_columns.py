@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from itertools import pairwise
 
 import pytest
 from hypothesis import given
@@ -43,7 +44,10 @@ def test_what_is_too_long_ends_in_an_ellipsis(text: str, width: int, right: bool
     assert "".join(span.text for span in fitting((Span(text),), width, right=right)) == shown
 
 
-@given(st.lists(st.tuples(st.integers(1, 20), st.integers(0, 9), st.integers(0, 30)), min_size=1), st.integers(1, 120))
+@given(
+    st.lists(st.tuples(st.integers(1, 20), st.integers(0, 9), st.integers(0, 30)), min_size=1),
+    st.integers(1, 120),
+)
 def test_columns_fit_their_room(shapes: list[tuple[int, int, int]], room: int) -> None:
     """The columns that are shown stand in their order, do not touch, and end inside of the room."""
     columns = [
@@ -52,7 +56,7 @@ def test_columns_fit_their_room(shapes: list[tuple[int, int, int]], room: int) -
     placed = fitted(columns, room)
     assert placed
     assert [int(each.column.name) for each in placed] == sorted(int(each.column.name) for each in placed)
-    for each, following in zip(placed, placed[1:], strict=False):
+    for each, following in pairwise(placed):
         assert each.start + each.width + GAP == following.start
     assert placed[-1].start + placed[-1].width <= room
 

@@ -63,7 +63,9 @@ def store(loaded: LoadedSettings) -> Iterator[Store]:
             writes.put_rows(tx, "coils", [_coil("C1"), _coil("C2", location="BAY-2"), _coil("C3", grade="X9")],
                             feed="coils", now_s=NOW_S)  # fmt: skip
             hours_s = np.arange(NOW_S - 40 * DAY_S, NOW_S, 3600.0)
-            readings = [(float(at_s), name, c) for name, c in (("T1", 21.0), ("T2", 33.0)) for at_s in hours_s]
+            readings = [
+                (float(at_s), name, c) for name, c in (("T1", 21.0), ("T2", 33.0)) for at_s in hours_s
+            ]
             writes.put_rows(tx, "temperatures", readings, feed="temperatures", now_s=NOW_S)
         yield opened
 
@@ -79,7 +81,12 @@ def _coil(coil_id: str, **given: str) -> tuple[object, ...]:
 def _assess(store: Store, loaded: LoadedSettings, at_s: float = NOW_S) -> Assessment:
     with store.write() as tx:
         made = assess(
-            queries.inventory(tx, at_s), queries.readings(tx), queries.outlook(tx), loaded.settings, loaded.digest, at_s
+            queries.inventory(tx, at_s),
+            queries.readings(tx),
+            queries.outlook(tx),
+            loaded.settings,
+            loaded.digest,
+            at_s,
         )
         writes.put_assessment(tx, made)
     return made
@@ -90,7 +97,9 @@ def _tick(store: Store, at_s: float) -> None:
         writes.put_status(tx, "tick", {"at_s": at_s, "reading_s": at_s - 600.0}, at_s)
 
 
-def test_before_the_daemon_has_made_the_store_that_is_said_and_later_it_is_there(loaded: LoadedSettings) -> None:
+def test_before_the_daemon_has_made_the_store_that_is_said_and_later_it_is_there(
+    loaded: LoadedSettings,
+) -> None:
     """The board may be started first."""
     gateway = GatewayToStore(loaded)
     with pytest.raises(StoreError, match="none is there"):
@@ -134,8 +143,10 @@ def test_alarms_come_anew_when_the_journal_has_grown(store: Store, loaded: Loade
     gateway.close()
 
 
-def test_a_trace_agrees_with_the_assessment_that_the_board_shows(store: Store, loaded: LoadedSettings) -> None:
-    """At the time of the assessment the middle curve has the coil's YPE (to a line's width), the other its temperature."""
+def test_a_trace_agrees_with_the_assessment_that_the_board_shows(
+    store: Store, loaded: LoadedSettings
+) -> None:
+    """At the time of the assessment the middle curve has the coil's YPE within a line's width, the other its temperature."""
     made = _assess(store, loaded)
     gateway = GatewayToStore(loaded)
     gateway.snapshot()

@@ -51,7 +51,9 @@ def test_hostile_names_are_text_on_every_screen() -> None:
         for place, name in enumerate(NAMES)
     ]
     alarms = [
-        replace(alarm(AlarmKind.UNASSESSABLE_COIL, name, Priority.HIGH, location=name), detail={"reason": name})
+        replace(
+            alarm(AlarmKind.UNASSESSABLE_COIL, name, Priority.HIGH, location=name), detail={"reason": name}
+        )
         for name in NAMES
     ]
     data = plant(coils, alarms)

@@ -19,7 +19,9 @@ from tests.board.plant import ALARMS, COILS, NAN, alarm, assessment_of, coil
 
 verdicts = st.sampled_from(list(Verdict))
 days = st.floats(-30, 60) | st.just(NAN)
-coil_lists = st.lists(st.builds(lambda v, r, p: coil("", v, returns_d=r, press_d=p), verdicts, days, days)).map(
+coil_lists = st.lists(
+    st.builds(lambda v, r, p: coil("", v, returns_d=r, press_d=p), verdicts, days, days)
+).map(
     lambda coils: CoilList(assessment_of([replace(each, coil_id=f"C{n:03}") for n, each in enumerate(coils)]))
 )
 orders = st.builds(Order, st.sampled_from(list(SORTABLE)), st.booleans())
@@ -100,7 +102,14 @@ def test_a_number_is_found_whole_before_by_its_beginning_before_by_its_inside() 
     """Of several coils the best likeness is meant."""
     coils = CoilList(assessment_of([coil(name) for name in ("A12", "12", "123", "B2")]))
     rows = coils.arranged(Order("coil"), "")
-    assert [coils.first_like(text, rows) for text in ("12", "1", "2", "a1", " ", "9")] == [0, 0, 0, 2, None, None]
+    assert [coils.first_like(text, rows) for text in ("12", "1", "2", "a1", " ", "9")] == [
+        0,
+        0,
+        0,
+        2,
+        None,
+        None,
+    ]
 
 
 def test_counts_are_of_every_verdict() -> None:

@@ -48,7 +48,14 @@ def test_a_relative_time_says_which_way(ahead_s: float) -> None:
 
 @pytest.mark.parametrize(
     ("slack_h", "words"),
-    [(31.2, "31 h"), (-6.0, "late 6 h"), (0.4, "24 min"), (-0.75, "late 45 min"), (96.0, "4 d"), (-900.0, "late 38 d")],
+    [
+        (31.2, "31 h"),
+        (-6.0, "late 6 h"),
+        (0.4, "24 min"),
+        (-0.75, "late 45 min"),
+        (96.0, "4 d"),
+        (-900.0, "late 38 d"),
+    ],
 )
 def test_negative_slack_is_late(slack_h: float, words: str) -> None:
     """One unit, so that a column of them can be compared."""

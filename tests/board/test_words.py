@@ -55,7 +55,9 @@ def test_what_is_not_known_is_left_out_or_said() -> None:
     """No "nan" ever reaches the screen."""
     for each in (
         coil("C1", Verdict.UNASSESSED, press_d=NAN, part=None),
-        replace(coil("C2", press_d=NAN), return_p10_s=NAN, return_p50_s=NAN, return_p90_s=NAN, ype_limit_pct=NAN),
+        replace(
+            coil("C2", press_d=NAN), return_p10_s=NAN, return_p50_s=NAN, return_p90_s=NAN, ype_limit_pct=NAN
+        ),
     ):
         said = guidance(each, NOW_S, SITE.zone)
         facts = dict(said.facts)

@@ -13,6 +13,8 @@ from agewatch.board.times import day_time, relative
 from agewatch.board.widgets.columns import Cell, Column, Placed, widest
 
 _TIME = len("28 Sep 07:30")
+_TITLE = len("Yield point returns before pre")
+"""Cells of a title that tell each kind from all others."""
 _MOST_CELLS = 32
 
 
@@ -84,11 +86,11 @@ def _cell(alarm: Alarm, column: str) -> Cell:
 
 
 def _columns(alarms: Sequence[Alarm]) -> tuple[Column, ...]:
-    titles = [RATIONALISATION[alarm.kind].title for alarm in alarms]
+    longest = widest([RATIONALISATION[alarm.kind].title for alarm in alarms], 20, _MOST_CELLS + 8)
     return (
         Column("priority", "priority", len(" 2 medium"), 0),
-        Column("state", "state", len("○ returned to normal"), 3),
-        Column("what", "what", widest(titles, 20, 40), 2),
+        Column("state", "state", len("● unacknowledged"), 2, wide=len("○ returned to normal")),
+        Column("what", "what", min(_TITLE, longest), 3, wide=longest),
         Column("subject", "about", widest([alarm.subject for alarm in alarms], 8, _MOST_CELLS), 1),
         Column("location", "location", widest([alarm.location for alarm in alarms], 8, 20), 5),
         Column("since", "raised", _TIME, 4, wide=_TIME + len("  99 d 23 h ago")),
