@@ -12,6 +12,7 @@ from agewatch.aging.settled import SERIES_LIMIT_K, Rows, SettledField, Standing
 
 _FAR_NODES = np.linspace(0.0, 1.0, 25)
 """Nodes along a far piece, as shares of it."""
+_FAR_BATCH = 8_000
 
 
 @dataclass(frozen=True, slots=True)
@@ -210,6 +211,12 @@ def _gathered(
 
 
 def _far_exposure_s(field: SettledField, channel: Rows, pieces: Pieces, at_s: Floats) -> Floats:
+    """Exposure from the start of far pieces to `at_s`, s, (n, n_channels): in batches that fit the caches."""
+    batches = np.array_split(np.arange(len(at_s)), -(-len(at_s) // _FAR_BATCH))
+    return np.concatenate([_far_batch_s(field, channel[b], pieces.take(b), at_s[b]) for b in batches])
+
+
+def _far_batch_s(field: SettledField, channel: Rows, pieces: Pieces, at_s: Floats) -> Floats:
     """Exposure from the start of far pieces to `at_s`, s, (n, n_channels).
 
     Notes

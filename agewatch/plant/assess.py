@@ -127,18 +127,18 @@ def _joined(
 def _in_batches(
     inventory: Inventory, air: PlantAir, settings: Settings, at_s: float
 ) -> tuple[dict[str, NDArray[Any]], Coded]:
-    """Columns and reasons of coils that can be assessed: in batches that fit the caches, on all cores."""
+    """Columns and reasons of coils that can be assessed: in as many batches as there are cores."""
     legs = coil_legs(inventory, settings, at_s)
     field = _field(legs, air, settings)
 
-    def evaluate(batch: Rows) -> tuple[dict[str, NDArray[Any]], Coded]:
-        own = legs.of_coils(int(batch[0]), int(batch[-1]) + 1)
-        return _evaluate(_joined(inventory.take(batch), own, field, air, settings, at_s), settings)
+    def evaluate(begin: int, end: int) -> tuple[dict[str, NDArray[Any]], Coded]:
+        own = inventory.between(begin, end), legs.of_coils(begin, end)
+        return _evaluate(_joined(*own, field, air, settings, at_s), settings)
 
     count = min(os.cpu_count() or 1, -(-len(inventory) // _LEAST_BATCH_COILS))
-    batches = np.array_split(np.arange(len(inventory)), count)
+    edges = np.linspace(0, len(inventory), count + 1).astype(int).tolist()
     with ThreadPoolExecutor() as threads:
-        parts = list(threads.map(evaluate, batches))
+        parts = list(threads.map(evaluate, edges[:-1], edges[1:]))
     columns = {name: np.concatenate([part[0][name] for part in parts]) for name in parts[0][0]}
     return columns, Coded(np.concatenate([part[1].codes for part in parts]), parts[0][1].labels)
 

@@ -101,6 +101,17 @@ class Inventory:
             columns[field.name] = column.take(chosen) if isinstance(column, Coded) else column[chosen]
         return Inventory(**columns)
 
+    def between(self, begin: int, end: int) -> Inventory:
+        """The inventory of the coils from row `begin` to before row `end`, without a copy of what it holds."""
+        first, last = np.searchsorted(self.move_coil, [begin, end])
+        columns: dict[str, Any] = {}
+        for field in fields(self):
+            column = getattr(self, field.name)
+            chosen = slice(first, last) if field.name.startswith("move_") else slice(begin, end)
+            part = Coded(column.codes[chosen], column.labels) if isinstance(column, Coded) else column[chosen]
+            columns[field.name] = part - np.int32(begin) if field.name == "move_coil" else part
+        return Inventory(**columns)
+
 
 @dataclass(frozen=True, slots=True)
 class Readings:

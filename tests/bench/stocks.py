@@ -32,7 +32,7 @@ def plant(
     coils: int,
     *,
     locations: int = 10,
-    past_days: float = 120.0,
+    past_days: float = 90.0,
     legs: float = 1.3,
     warm: float = 0.3,
     spreads: bool = True,
