@@ -63,6 +63,9 @@ coil = Table(
     Column("al_pct", Double),
     Column("first_seen_ms", BigInteger, nullable=False),
     Column("last_seen_ms", BigInteger, nullable=False),  # a coil that leaves its feed stays; to the hour
+    Column(
+        "told_digest", LargeBinary, nullable=False
+    ),  # of the feed's row as last told: an equal one tells nothing
     sqlite_with_rowid=False,  # read in the order of the key, which the clustered key gives for nothing
 )
 

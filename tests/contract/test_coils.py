@@ -77,6 +77,21 @@ def test_an_empty_store_has_an_empty_inventory(store: Store) -> None:
     assert (len(coils), len(coils.move_s), coils.location.labels) == (0, 0, ())
 
 
+def test_a_row_told_in_other_words_changes_nothing(store: Store) -> None:
+    """A status that is told where it was taken for granted, or the other way round, is the same."""
+    put(store, "coils", coil())
+    assert put(store, "coils", coil(status="stored")) == Put(0, 0, 1)
+    assert put(store, "coils", coil()) == Put(0, 0, 1)
+    assert journal_of(store, "C1") == []
+
+
+def test_a_value_that_changes_there_and_back_is_taken_in_each_time(store: Store) -> None:
+    """What was told before last is news again."""
+    for mass_kg, expected in ((1.0, Put(1, 0, 0)), (2.0, Put(0, 1, 0)), (1.0, Put(0, 1, 0))):
+        assert put(store, "coils", coil(mass_kg=mass_kg)) == expected
+        assert read(store).mass_kg.tolist() == [mass_kg]
+
+
 def test_a_coil_that_leaves_its_feed_stays(store: Store) -> None:
     """A snapshot without a coil does not delete it."""
     put(store, "coils", coil("C1"), coil("C2"))

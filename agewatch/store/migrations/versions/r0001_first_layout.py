@@ -40,6 +40,7 @@ def upgrade() -> None:
         sa.Column("al_pct", sa.Double()),
         sa.Column("first_seen_ms", sa.BigInteger(), nullable=False),
         sa.Column("last_seen_ms", sa.BigInteger(), nullable=False),
+        sa.Column("told_digest", sa.LargeBinary(), nullable=False),
         sa.PrimaryKeyConstraint("coil_id", name=op.f("pk_coil")),
         sqlite_with_rowid=False,
     )
