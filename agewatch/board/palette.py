@@ -1,7 +1,8 @@
 """The board's colours by night and by day: grey, and a few colours for what is abnormal.
 
 The abnormal ones follow Okabe and Ito's palette, which the common deficiencies of colour vision keep apart; each
-stands beside a letter or digit all the same.
+stands beside a letter or digit all the same. In a terminal of sixteen colours they fall on red, yellow, cyan or blue,
+and magenta.
 """
 
 from __future__ import annotations
@@ -17,7 +18,7 @@ NIGHT = Theme(
     surface="#232628",
     panel="#2c2f32",
     accent="#aab0b6",
-    warning="#e69f00",
+    warning="#f0b400",
     error="#e8713a",
     success="#8a9199",
     dark=True,
@@ -29,9 +30,9 @@ NIGHT = Theme(
         "band": "#34393d",
         "on-act": "#141516",
         "act-now": "#e8713a",
-        "act-soon": "#e6a817",
-        "look": "#7cc0ee",
-        "unknown": "#dda3c6",
+        "act-soon": "#f0b400",
+        "look": "#5ec8f5",
+        "unknown": "#f08ae0",
         "limit": "#f39a70",
         "mark": "#b9bec4",
         "footer-key-foreground": "#c9cdd1",
@@ -49,7 +50,7 @@ DAY = Theme(
     panel="#d3d6d8",
     accent="#454b51",
     warning="#8a5a00",
-    error="#b3420a",
+    error="#b01000",
     success="#5d646b",
     dark=False,
     variables={
@@ -59,11 +60,11 @@ DAY = Theme(
         "quiet": "#575d63",
         "band": "#cdd2d6",
         "on-act": "#ffffff",
-        "act-now": "#b3420a",
+        "act-now": "#b01000",
         "act-soon": "#8a5a00",
-        "look": "#004a7c",
-        "unknown": "#7d2a60",
-        "limit": "#8f3000",
+        "look": "#004a9c",
+        "unknown": "#802080",
+        "limit": "#8f1a00",
         "mark": "#3a4046",
         "footer-key-foreground": "#24282c",
         "footer-background": "#d9dcde",

@@ -76,14 +76,17 @@ def end(process: Process) -> int:
     except subprocess.TimeoutExpired:
         process.kill()
         return process.wait()
+    finally:
+        if process.stdin is not None:
+            process.stdin.close()
 
 
 def _started(config: Path, log: Path) -> Process:
     paths = [str(_PACKAGE.parent), *filter(None, [os.environ.get("PYTHONPATH")])]
     with log.open("wb") as said:
         return subprocess.Popen(  # noqa: S603 - this very program
-            [sys.executable, "-m", "agewatch", "run", "--config", str(config)],
-            stdin=subprocess.DEVNULL,
+            [sys.executable, "-m", "agewatch", "run", "--while-stdin", "--config", str(config)],
+            stdin=subprocess.PIPE,  # closed with this process, in whatever way it ends
             stdout=said,
             stderr=said,
             env={**os.environ, "PYTHONPATH": os.pathsep.join(paths)},

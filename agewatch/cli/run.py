@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+import sys
 from pathlib import Path
 from typing import Literal
 
@@ -20,12 +21,15 @@ from agewatch.daemon.signals import EndingSignals
 @click.command("run")
 @config_option
 @click.option("--log", type=click.Choice(["text", "json"]), default="text", help="Form of the log on stderr.")
-def command(config: Path, log: Literal["text", "json"]) -> None:
+@click.option(
+    "--while-stdin", is_flag=True, help="End when standard input ends, as with the program that began it."
+)
+def command(config: Path, log: Literal["text", "json"], while_stdin: bool) -> None:
     """Run the daemon: read the feeds, assess, move the alarms on, deliver messages.
 
     It is the only writer of its store, and ends cleanly at SIGTERM or SIGINT.
     """
     loaded = open_plant(config)
     set_up_log(log, debug=bool(click.get_current_context().meta.get(DEBUG)))
-    with EndingSignals() as signals:
+    with EndingSignals(sys.stdin.fileno() if while_stdin else None) as signals:
         run(build_daemon(loaded, os.environ), Notify(os.environ), signals)

@@ -180,11 +180,12 @@ class Daemon:
         try:
             return work()
         except StoreError as error:
-            self._failed("request", error)
+            self._failed("request", error, again=False)
             return Reply(False, str(error))
 
-    def _failed(self, loop: str, error: Exception) -> None:
-        _log.error("%s failed: %s: %s", loop, type(error).__name__, error, exc_info=error)
+    def _failed(self, loop: str, error: Exception, again: bool) -> None:
+        level = logging.DEBUG if again else logging.ERROR  # a fault that stays is told once
+        _log.log(level, "%s failed: %s: %s", loop, type(error).__name__, error, exc_info=error)
         if isinstance(error, StoreError):
             self._trouble.told(error)
 

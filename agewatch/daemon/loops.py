@@ -7,8 +7,8 @@ from dataclasses import dataclass
 from threading import Lock
 from time import monotonic
 
-OnFailure = Callable[[str, Exception], None]
-"""Told of a loop's name and of the error that ended one of its turns."""
+OnFailure = Callable[[str, Exception, bool], None]
+"""Told of a loop's name, of the error that ended one of its turns, and whether the turn before ended alike."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,8 +54,10 @@ class Loop:
         try:
             work()
         except Exception as error:
-            self._count(began_s, str(error) or type(error).__name__)
-            self._on_failure(self.name, error)
+            told = f"{type(error).__name__}: {error}"
+            again = told == self._last_error
+            self._count(began_s, told)
+            self._on_failure(self.name, error, again)
             return False
         self._count(began_s, "")
         return True

@@ -18,7 +18,11 @@ class EndingSignals:
     """While open, SIGTERM and SIGINT only wake whoever waits here: nothing runs in the middle of something else.
 
     For the main thread. Blocking the signals would not do: a library's own threads would still be ended by them.
+    also: a file descriptor that counts as a signal once there is something to read, or its other end is closed.
     """
+
+    def __init__(self, also: int | None = None) -> None:
+        self._also = [] if also is None else [also]
 
     def __enter__(self) -> Self:
         self._heard, self._wakes = socket.socketpair()
@@ -31,7 +35,7 @@ class EndingSignals:
 
     def wait(self, within_s: float | None = None) -> bool:
         """Whether one came within so many real seconds, or before."""
-        return bool(select.select([self._heard], [], [], within_s)[0])
+        return bool(select.select([self._heard.fileno(), *self._also], [], [], within_s)[0])
 
     def __exit__(
         self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None

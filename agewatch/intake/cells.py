@@ -78,7 +78,7 @@ def text(column: Column) -> Understand:
 
 
 def _choice(choices: tuple[str, ...]) -> Understand:
-    known = {choice.casefold(): choice for choice in choices}
+    known = {choice.casefold(): str(choice) for choice in choices}  # plain text, also of an enumeration
 
     def choose(cell: str) -> Meaning:
         choice = known.get(cell.casefold())

@@ -109,7 +109,8 @@ class Inventory:
             column = getattr(self, field.name)
             chosen = slice(first, last) if field.name.startswith("move_") else slice(begin, end)
             part = Coded(column.codes[chosen], column.labels) if isinstance(column, Coded) else column[chosen]
-            columns[field.name] = part - np.int32(begin) if field.name == "move_coil" else part
+            columns[field.name] = part
+        columns["move_coil"] = self.move_coil[first:last] - np.int32(begin)
         return Inventory(**columns)
 
 

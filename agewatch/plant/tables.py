@@ -113,9 +113,7 @@ MOVES = Table(
     (_text("coil_id", required=True), _time("at", required=True), _text("location", required=True)),
     ("coil_id", "at"),
 )
-PRESSES = Table(
-    "presses", (_text("coil_id", required=True), _time("press_at", required=True)), ("coil_id",)
-)
+PRESSES = Table("presses", (_text("coil_id", required=True), _time("press_at", required=True)), ("coil_id",))
 TEMPERATURES = Table(
     "temperatures",
     (

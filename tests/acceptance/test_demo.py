@@ -8,6 +8,9 @@ import subprocess
 import sys
 from pathlib import Path
 from shutil import rmtree
+from time import monotonic
+
+import pytest
 
 from agewatch.plant.assessment import Verdict
 from tests.processes import LONG_S, agewatch, environment
@@ -26,6 +29,15 @@ def processes_about(text: str) -> list[str]:
     return lines
 
 
+def children_of(process_id: int) -> list[str]:
+    """Command lines of the processes that one has started."""
+    children = " ".join(task.read_text() for task in Path(f"/proc/{process_id}/task").glob("*/children"))
+    return [
+        Path(f"/proc/{child}/cmdline").read_bytes().replace(b"\0", b" ").decode()
+        for child in children.split()
+    ]
+
+
 def test_headless_demo_shows_the_whole_job() -> None:
     """Every verdict is there, alarms stand, every message verifies, and nothing is left running or lying about."""
     run = agewatch("demo", "--headless", "--for", "6s", "--keep")
@@ -41,16 +53,22 @@ def test_headless_demo_shows_the_whole_job() -> None:
     rmtree(folder)
 
 
-def test_demo_that_is_ended_ends_its_daemon() -> None:
-    """SIGTERM ends demo and daemon, and the scratch folder goes."""
+@pytest.mark.parametrize(
+    ("number", "status"), [(signal.SIGTERM, 128 + signal.SIGTERM), (signal.SIGKILL, -signal.SIGKILL)]
+)
+def test_demo_that_is_ended_ends_its_daemon(number: signal.Signals, status: int) -> None:
+    """SIGTERM ends demo and daemon, and the scratch folder goes; even SIGKILL leaves no daemon behind."""
     command = [sys.executable, "-m", "agewatch", "demo", "--headless", "--for", "10min"]
     with subprocess.Popen(command, env=environment()) as demo:
         daemon: list[str] = []
         while not daemon:
             assert demo.poll() is None
-            daemon = [line for line in processes_about("agewatch run --config") if "agewatch-demo-" in line]
+            daemon = [line for line in children_of(demo.pid) if "agewatch run" in line]
         folder = Path(daemon[0].split("--config ")[1].strip()).parent
-        demo.send_signal(signal.SIGTERM)
-        assert demo.wait(LONG_S) == 128 + signal.SIGTERM
-    assert processes_about(str(folder)) == []
-    assert not folder.exists()
+        demo.send_signal(number)
+        assert demo.wait(LONG_S) == status
+    until_s = monotonic() + LONG_S
+    while processes_about(str(folder)):
+        assert monotonic() < until_s
+    assert folder.exists() == (number == signal.SIGKILL)
+    rmtree(folder, ignore_errors=True)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from collections.abc import Callable
 from dataclasses import dataclass
 
@@ -41,7 +42,9 @@ class Followed:
         return float(state[0, coil]), state[1:, coil]
 
 
-def follow(curves: AirCurves, legs: Legs, start_k: Floats, energies_j_mol: Floats, until_s: float) -> Followed:
+def follow(
+    curves: AirCurves, legs: Legs, start_k: Floats, energies_j_mol: Floats, until_s: float
+) -> Followed:
     """Solve dT/dt = (T_air − T)/τ and dx/dt = speed(T) for all coils.
 
     Parameters
@@ -58,7 +61,7 @@ def follow(curves: AirCurves, legs: Legs, start_k: Floats, energies_j_mol: Float
     coil_k = np.full((len(edge_s), len(start_k)), T_REF_K)
     exposure_s = np.zeros((len(edge_s), *energies.shape))
     between = []
-    for step, (from_s, to_s) in enumerate(zip(edge_s[:-1], edge_s[1:], strict=True)):
+    for step, (from_s, to_s) in enumerate(itertools.pairwise(edge_s)):
         leg = _present_leg(legs, from_s, len(start_k))
         air_k = _ends(curves, legs.location[leg], from_s, to_s)
         fresh = begins_s == from_s
@@ -90,7 +93,11 @@ def _ends(curves: AirCurves, location: np.ndarray[tuple[int], np.dtype[np.intp]]
 
 
 def _slopes(
-    air_k: Floats, step_s: float, tau_s: Floats, energies: Floats, begun: np.ndarray[tuple[int], np.dtype[np.bool_]]
+    air_k: Floats,
+    step_s: float,
+    tau_s: Floats,
+    energies: Floats,
+    begun: np.ndarray[tuple[int], np.dtype[np.bool_]],
 ) -> Callable[[float, Floats], Floats]:
     def slopes(elapsed_s: float, state: Floats) -> Floats:
         coil_k = state[: len(tau_s)]

@@ -6,6 +6,7 @@ import asyncio
 from collections.abc import Awaitable, Callable
 from typing import cast
 
+from textual.app import App
 from textual.pilot import Pilot
 
 from agewatch.board.app import BoardApp
@@ -33,7 +34,7 @@ async def until(pilot: Pilot[None], condition: Callable[[], bool]) -> None:
 
 
 def drive(
-    app: BoardApp, task: Callable[[Pilot[None]], Awaitable[None]], size: tuple[int, int] = (120, 40)
+    app: BoardApp, task: Callable[[Pilot[None]], Awaitable[None]], size: tuple[int, int] = (120, 28)
 ) -> None:
     """Run `app` on a screen of `size`, do `task` once it shows its first data, and end it."""
 
@@ -60,7 +61,7 @@ def listed(app: BoardApp) -> ListScreen:
     return cast(ListScreen, app.screen)
 
 
-def screen_text(app: BoardApp) -> str:
+def screen_text(app: App[None]) -> str:
     """What stands on the screen, line by line."""
     strips = app.screen._compositor.render_strips()
     return "\n".join("".join(segment.text for segment in strip) for strip in strips)

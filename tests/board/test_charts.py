@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import asyncio
 import re
 from dataclasses import replace
 from zoneinfo import ZoneInfo
@@ -10,12 +11,15 @@ import numpy as np
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
+from textual.app import App, ComposeResult
 
+from agewatch.board.palette import NIGHT
 from agewatch.board.widgets.plot import Plot
 from agewatch.board.widgets.temperature_chart import temperature_picture
-from agewatch.board.widgets.ype_chart import return_s, shown_span, top_of_scale, ype_picture
+from agewatch.board.widgets.ype_chart import YpeChart, return_s, shown_span, top_of_scale, ype_picture
 from agewatch.plant.assessment import Verdict
 from agewatch.plant.trace import CoilTrace
+from tests.board.driving import screen_text
 from tests.board.plant import DAY_S, NAN, NOW_S, coil, trace_of
 
 PRAGUE = ZoneInfo("Europe/Prague")
@@ -126,3 +130,35 @@ def test_temperatures_have_a_scale_even_when_the_air_stands_still(swing_c: float
     assert "coil" in text[0]
     assert "air" in text[0]
     assert any(line[:5].strip() for line in text[1:-2])
+
+
+class _ChartApp(App[None]):
+    """Nothing but the chart."""
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.register_theme(NIGHT)
+        self.theme = NIGHT.name
+        self.chart = YpeChart(PRAGUE, id="ype")
+
+    def compose(self) -> ComposeResult:
+        yield self.chart
+
+
+def test_a_chart_without_room_or_without_a_curve_says_so() -> None:
+    """A sentence stands where the picture would, and the picture comes when there is room."""
+
+    async def run() -> None:
+        app = _ChartApp()
+        async with app.run_test(size=(29, 7)) as pilot:
+            app.chart.show(_trace())
+            await pilot.pause()
+            assert "There is no room for the" in screen_text(app)
+            await pilot.resize_terminal(30, 8)
+            await pilot.pause()
+            assert "limit 0.2 %" in screen_text(app)
+            app.chart.say("No curve: the grade [red]\x1b does not age.")
+            await pilot.pause()
+            assert "No curve: the grade [red] does" in screen_text(app)
+
+    asyncio.run(run())

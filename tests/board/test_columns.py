@@ -14,8 +14,8 @@ from agewatch.board.look import Span
 from agewatch.board.widgets.columns import GAP, Column, fitted, fitting, widest
 from agewatch.board.widgets.paragraphs import Paragraph, wrapped
 
-texts = st.text(alphabet=st.characters() | st.sampled_from("鋼ÅÄ漢 a1\u0301\u200b\x1b"), max_size=30)
-spans = st.lists(st.builds(Span, texts), max_size=4).map(tuple)
+texts = st.text(alphabet=st.characters() | st.sampled_from("鋼ÅÄ漢 a1\u0301\u200b\x1b"), max_size=10)
+spans = st.lists(st.builds(Span, texts), max_size=3).map(tuple)
 
 
 def _cells(line: tuple[Span, ...] | list[Span]) -> int:

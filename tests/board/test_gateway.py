@@ -146,7 +146,7 @@ def test_alarms_come_anew_when_the_journal_has_grown(store: Store, loaded: Loade
 def test_a_trace_agrees_with_the_assessment_that_the_board_shows(
     store: Store, loaded: LoadedSettings
 ) -> None:
-    """At the time of the assessment the middle curve has the coil's YPE within a line's width, the other its temperature."""
+    """At that time the middle curve has the coil's YPE within a line's width, the other its temperature."""
     made = _assess(store, loaded)
     gateway = GatewayToStore(loaded)
     gateway.snapshot()

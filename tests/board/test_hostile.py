@@ -58,7 +58,7 @@ def test_hostile_names_are_text_on_every_screen() -> None:
     ]
     data = plant(coils, alarms)
     app = board(data)
-    size = (150, 45)
+    size = (120, 28)
 
     async def look(pilot: Pilot[None]) -> None:
         for _ in NAMES:

@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 
 import pytest
-from rich.color import Color
+from rich.color import Color, ColorSystem
 from textual.pilot import Pilot
 
 from agewatch.board.app import BoardApp
@@ -49,6 +49,18 @@ def test_every_tone_can_be_read_by_night_and_by_day(theme: object, tone: str) ->
     for ground in ("$background", "$surface", "$chosen", "$band"):
         on, text = _pair(theme, TONES[tone], ground)
         assert _contrast(on, text) >= least, (tone, ground)
+
+
+@pytest.mark.parametrize("theme", [NIGHT, DAY], ids=lambda theme: theme.name)
+def test_sixteen_colours_keep_the_verdicts_apart(theme: object) -> None:
+    """Brought down to a plain terminal's colours, the abnormal ones are four different ones, and none is grey."""
+    names = ("act-now", "act-soon", "look", "unknown")
+    plain = [
+        Color.parse(theme.variables[name]).downgrade(ColorSystem.STANDARD).number  # type: ignore[attr-defined]
+        for name in names
+    ]
+    assert len(set(plain)) == len(names)
+    assert not set(plain) & {0, 7, 8, 15}
 
 
 def _pair(theme: object, style: str, ground: str) -> tuple[str, str]:

@@ -212,6 +212,22 @@ def test_all_alarms_on_the_screen_are_acknowledged_after_a_question() -> None:
     drive(app, acknowledge)
 
 
+def test_alarms_are_acknowledged_one_after_the_other_without_moving() -> None:
+    """The next one that waits comes under the hand: the choice does not follow the one that is dealt with."""
+    data = plant()
+    app = board(data)
+
+    async def acknowledge(pilot: Pilot[None]) -> None:
+        await press(pilot, "2")
+        await press(pilot, "a")
+        assert str(listed(app).table.chosen).endswith("C1001")
+        await press(pilot, "a")
+        assert [each.needs_acknowledging for each in data.now.alarms] == [False, False, False, True, True]
+        assert listed(app).table.row == 0
+
+    drive(app, acknowledge)
+
+
 def test_only_alarms_in_view_are_acknowledged_together() -> None:
     """What has not been on the screen has not been seen."""
     many = [replace(ALARMS[1], subject=f"C{number}") for number in range(1000, 1100)]

@@ -76,7 +76,7 @@ class Outbox:
             None, "", None,
         )  # fmt: skip
 
-    def _failed(self, name: str, error: Exception) -> None:
+    def _failed(self, name: str, error: Exception, again: bool) -> None:
         self.failures.append((name, error))
 
     def _attempted(self, endpoint: str, outcome: Outcome) -> None:

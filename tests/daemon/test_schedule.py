@@ -20,7 +20,7 @@ class Jobs:
 
     def __init__(self, clock: Clock) -> None:
         self.failures: list[tuple[str, str]] = []
-        self.schedule = Schedule(clock, lambda name, error: self.failures.append((name, str(error))))
+        self.schedule = Schedule(clock, lambda name, error, again: self.failures.append((name, str(error))))
 
 
 @pytest.fixture

@@ -8,7 +8,7 @@ from textual.binding import Binding
 from textual.containers import Container, Vertical
 from textual.message import Message
 
-from agewatch.alarms import COIL_KINDS, Alarm
+from agewatch.alarms import COIL_KINDS, Alarm, AlarmKey
 from agewatch.board.alarm_list import SORTABLE
 from agewatch.board.data import Snapshot
 from agewatch.board.present import Present
@@ -48,6 +48,7 @@ class AlarmsScreen(ListScreen):
         super().__init__(present)
         self._panel = AlarmPanel(present.site.zone)
         self._alarms: tuple[Alarm, ...] | None = None
+        self._acknowledging: AlarmKey | None = None
 
     def compose_body(self) -> ComposeResult:
         with Container(id="body"):
@@ -75,7 +76,7 @@ class AlarmsScreen(ListScreen):
             if self.narrowed
             else "No alarm stands, and none waits to be acknowledged."
         )
-        self.table.show(lines, from_top=from_top)
+        self.table.show(lines, from_top=from_top, by_row=self._is_dealt_with(self._alarm()))
         self.say_count(len(lines), len(alarms), "alarms")
         self._show_alarm()
 
@@ -84,6 +85,7 @@ class AlarmsScreen(ListScreen):
         if alarm is None:
             return
         if alarm.needs_acknowledging:
+            self._acknowledging = alarm.key
             self.acknowledge([alarm])
         else:
             self.tell("This alarm is acknowledged already.")
@@ -121,3 +123,8 @@ class AlarmsScreen(ListScreen):
     def _alarm(self) -> Alarm | None:
         lines = self.table.lines
         return lines.alarms[self.table.row] if isinstance(lines, AlarmLines) and len(lines) else None
+
+    def _is_dealt_with(self, chosen: Alarm | None) -> bool:
+        """Whether the chosen alarm is the one that was to be acknowledged, and waits no more."""
+        waiting = {alarm.key for alarm in self._alarms or () if alarm.needs_acknowledging}
+        return chosen is not None and chosen.key == self._acknowledging and chosen.key not in waiting

@@ -80,7 +80,12 @@ class BoardScreen(Screen[None]):
 
     def tell(self, sentence: str, *, wrong: bool = False) -> None:
         """A sentence that goes away by itself."""
-        self.notify(inert(sentence), severity="error" if wrong else "information", markup=False)
+        self.notify(
+            inert(sentence),
+            severity="error" if wrong else "information",
+            timeout=8.0 if wrong else 3.0,
+            markup=False,
+        )
 
     @work(thread=True, group="acknowledge", exit_on_error=False)
     def acknowledge(self, alarms: Sequence[Alarm]) -> None:

@@ -86,17 +86,24 @@ def round_step(reach: float, most: int) -> float:
 
 
 def draw_upright_axis(field: Field, form: str) -> None:
-    """Values left of the field, one to each third line at most, and the line that they stand on."""
-    step = round_step(field.high - field.low, max(1, field.height // 2))
+    """Round values left of the field, on every second line at most, and the line that they stand on."""
     for line in range(field.top, field.top + field.height):
         field.plot.text(field.left - 1, line, "│", "quiet")
-    value = math.ceil(field.low / step - 1e-9) * step
-    while value <= field.high + 1e-9 * step:
+    for value in _round_values(field.low, field.high, max(1, field.height // 2)):
         line = round(float(field.row(value))) // 4
         label = form.format(value)
         field.plot.text(field.left - 1 - len(label), line, label, "quiet")
         field.plot.text(field.left - 1, line, "┤", "quiet")
-        value += step
+
+
+def _round_values(low: float, high: float, most: int) -> list[float]:
+    """Round values from `low` to `high`: at least one, and no more steps than `most` where that leaves one."""
+    while True:
+        step = round_step(high - low, most)
+        first, last = math.ceil(low / step - 1e-9), math.floor(high / step + 1e-9)
+        if first <= last:
+            return [step * number for number in range(first, last + 1)]
+        most += 1
 
 
 def draw_foot(field: Field, zone: ZoneInfo) -> None:

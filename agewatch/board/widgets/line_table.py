@@ -146,15 +146,16 @@ class LineTable(ScrollView, can_focus=True, inherit_bindings=False):
         first = self.scroll_offset.y
         return range(first, min(len(self._lines), first + self._room))
 
-    def show(self, lines: Lines, *, from_top: bool = False) -> None:
+    def show(self, lines: Lines, *, from_top: bool = False, by_row: bool = False) -> None:
         """Show other lines, or the same anew.
 
         The chosen object stays chosen and stays where it is on the screen. With `from_top` the first line is
-        chosen instead: an order or a filter was asked for, and its first lines are the answer.
+        chosen instead: an order or a filter was asked for, and its first lines are the answer. With `by_row` the
+        choice stays on its line: what stood there has been dealt with, and the next one follows.
         """
         before, place, at_top = self.chosen, self._row - self.scroll_offset.y, self.scroll_offset.y == 0
         self._lines = lines
-        kept = lines.row_of(before) if before is not None and not from_top else None
+        kept = lines.row_of(before) if before is not None and not (from_top or by_row) else None
         self._row = kept if kept is not None else (0 if from_top else max(0, min(self._row, len(lines) - 1)))
         self._lay_out()
         if from_top:
