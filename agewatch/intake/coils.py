@@ -18,7 +18,8 @@ class Coils:
 
     def __init__(self, names: list[str]) -> None:
         self._names = names
-        self._seen: dict[object, tuple[Row, int]] = {}
+        self._seen: dict[object, Row] = {}
+        self._line: dict[object, int] = {}
 
     def refused(self, rows: Sequence[Row], lines: Sequence[int]) -> Refused:
         """Which of some rows will not do; `lines` are theirs, counted from 1. The others count as seen."""
@@ -27,9 +28,11 @@ class Coils:
             if rp02_mpa is not None and rm_mpa is not None and rm_mpa <= rp02_mpa:
                 reason = f"{rm_mpa:g} is not above {self._names[_RP02]}, {rp02_mpa:g}; allowed is more"
                 refused[place] = (self._names[_RM], reason)
-        arrived = dict(zip(map(itemgetter(_COIL_ID), rows), zip(rows, lines, strict=True), strict=True))
+        coil_ids = list(map(itemgetter(_COIL_ID), rows))
+        arrived = dict(zip(coil_ids, rows, strict=True))
         if not refused and len(arrived) == len(rows) and self._seen.keys().isdisjoint(arrived):
             self._seen |= arrived
+            self._line.update(zip(coil_ids, lines, strict=True))
         else:
             self._one_by_one(rows, lines, refused)
         return refused
@@ -38,8 +41,11 @@ class Coils:
         for place, (row, line) in enumerate(zip(rows, lines, strict=True)):
             if place in refused:
                 continue
-            first, first_line = self._seen.setdefault(row[_COIL_ID], (row, line))
+            coil_id = row[_COIL_ID]
+            first, first_line = self._seen.setdefault(coil_id, row), self._line.setdefault(coil_id, line)
             if first is row:
                 continue
-            reason = f"{row[_COIL_ID]} stands in line {first_line} with other values; allowed is one row for each coil"
+            reason = (
+                f"{coil_id} stands in line {first_line} with other values; allowed is one row for each coil"
+            )
             refused[place] = None if first == row else (self._names[_COIL_ID], reason)

@@ -15,7 +15,7 @@ from agewatch.plant.tables import Reject, Row
 if TYPE_CHECKING:
     from agewatch.plant.settings import Feed
 
-_AT_ONCE = 256
+_AT_ONCE = 64
 """Records that are read together: few enough to stay in the processor's cache."""
 
 

@@ -4,12 +4,11 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable, Sequence
-from datetime import UTC, date, datetime, timedelta
+from datetime import UTC, datetime, timedelta
 from typing import Literal
 from zoneinfo import ZoneInfo
 
 from agewatch.intake.cells import Fault, shown
-from agewatch.intake.patterns import pattern_reader
 
 LocalTimes = Literal["refuse", "earlier", "later"]
 
@@ -22,7 +21,6 @@ _REST = re.compile(
 )
 _OFFSET = re.compile(r"[Zz+-]")
 _EPOCH = datetime(1970, 1, 1)
-_FIRST_DAY = _EPOCH.toordinal()
 _DAY_S = 86_400.0
 _REMEMBERED = 100_000
 
@@ -52,8 +50,8 @@ class Moments:
         self._zone = ZoneInfo(zone)
         self._local_times = local_times
         self._pattern = pattern
-        self._read = pattern_reader(pattern)
-        self._days = _Remembered(_day_s)
+        self._date_pattern = _date_pattern(pattern)
+        self._days = _Remembered(self._day_s)
         self._local_days = _Remembered(self._local_midnight_s)
         self._minutes = _Remembered(_minute_s)
         self._rests = _Remembered(lambda part: _rest_s(part, with_offset=True))
@@ -61,14 +59,12 @@ class Moments:
 
     def moment(self, cell: str) -> float | Fault:
         """One time."""
-        if self._pattern:
-            return self._by_pattern(cell)
         aware = _OFFSET.search(cell, 16) is not None
         rests = self._rests if aware else self._local_rests
         try:
             wall_s = self._days[cell[:10]] + self._minutes[cell[10:16]] + rests[cell[16:]]
         except ValueError:
-            return Fault(f"{shown(cell)} is no time; {_ALLOWED}")
+            return self._by_pattern(cell) if self._pattern else Fault(f"{shown(cell)} is no time; {_ALLOWED}")
         return wall_s if aware else self._placed(wall_s, cell)
 
     def ordinary(self, cells: Sequence[str]) -> list[float | None] | None:
@@ -76,8 +72,6 @@ class Moments:
 
         Day, minute and rest are looked up, so that times that are all different cost little all the same.
         """
-        if self._pattern:
-            return None
         aware = _OFFSET.search(next(filter(None, cells), ""), 16) is not None
         days = self._days if aware else self._local_days
         rests = self._rests if aware else self._local_rests
@@ -91,7 +85,7 @@ class Moments:
 
     def _by_pattern(self, cell: str) -> float | Fault:
         try:
-            wall = self._read(cell)
+            wall = datetime.strptime(cell, self._pattern)
         except (ValueError, OverflowError):
             return Fault(f"{shown(cell)} is no time; allowed is the feed's time_format, {self._pattern}")
         if wall.tzinfo is not None:
@@ -121,9 +115,15 @@ class Moments:
         before, after = (wall_s - (offset or timedelta(0)).total_seconds() for offset in offsets)
         return before, after
 
+    def _day_s(self, part: str) -> float:
+        """Start of a calendar day, as if in UTC; ValueError where there is none."""
+        if self._date_pattern is None or len(part) != 10 or not part.isascii():
+            raise ValueError(part)
+        return (datetime.strptime(part, self._date_pattern) - _EPOCH).total_seconds()
+
     def _local_midnight_s(self, part: str) -> float:
         """Start of a local day all of which has one offset; other days are a ValueError."""
-        start_s = _day_s(part)
+        start_s = self._days[part]
         starts = self._candidates(start_s)
         ends = self._candidates(start_s + _DAY_S)
         if len({*starts, *(end_s - _DAY_S for end_s in ends)}) > 1:
@@ -131,11 +131,14 @@ class Moments:
         return starts[0]
 
 
-def _day_s(part: str) -> float:
-    """Seconds since 1970 at the start of a calendar day; ValueError where there is none."""
-    if len(part) != 10 or part[4] != "-" or part[7] != "-" or not part.isascii():
-        raise ValueError(part)
-    return (date.fromisoformat(part).toordinal() - _FIRST_DAY) * _DAY_S
+def _date_pattern(pattern: str) -> str | None:
+    """The date of a pattern whose times are ten characters of date, then a clock as RFC 3339 has it; else None."""
+    date_pattern, clock_pattern = pattern[:8], pattern[8:]
+    if not pattern:
+        return "%Y-%m-%d"
+    dated = sorted(re.findall("%.", date_pattern)) == ["%Y", "%d", "%m"]
+    clocked = clock_pattern in (" %H:%M", " %H:%M:%S", "T%H:%M", "T%H:%M:%S")
+    return date_pattern if dated and clocked else None
 
 
 def _minute_s(part: str) -> float:
