@@ -81,8 +81,19 @@ class Works:
         """Start a daemon, and do not wait for anything."""
         with (self.folder / f"daemon-{len(self.started)}.log").open("wb") as log:
             process = subprocess.Popen(
-                [sys.executable, "-m", "agewatch", "run", "--config", str(self.config), "--log", "json"],
+                [
+                    sys.executable,
+                    "-m",
+                    "agewatch",
+                    "run",
+                    "--config",
+                    str(self.config),
+                    "--log",
+                    "json",
+                    "--while-stdin",
+                ],
                 env=environment(more),
+                stdin=subprocess.PIPE,  # so that no daemon outlives the tests, whatever ends them
                 stderr=log,
             )
         self.started.append(process)
@@ -126,6 +137,8 @@ class Works:
             if process.poll() is None:
                 process.kill()
             process.wait(LONG_S)
+            if process.stdin is not None:
+                process.stdin.close()
 
 
 class ServiceManager:
