@@ -14,6 +14,8 @@ from agewatch.board.look import Span
 Line = tuple[Span, ...]
 
 _WORDS = re.compile(r"\S+|\s+")
+_WIDEST = 2
+"""Cells of the widest character."""
 
 
 class Paragraph(NamedTuple):
@@ -36,7 +38,8 @@ def wrapped(paragraphs: Iterable[Paragraph], width: int) -> list[Line]:
 
 def _wrapped(paragraph: Paragraph, width: int) -> Iterator[Line]:
     spans, name, indent = paragraph
-    if indent > width // 2 or len(name) > indent:  # no room beside the name: it begins the text
+    cramped = indent > width // 2 or width - indent < _WIDEST
+    if cramped or len(name) > indent:  # no room beside the name: it begins the text
         spans, name, indent = (Span(f"{name} " if name else "", "quiet"), *spans), "", 0
     first = Span(f"{name:<{indent}}", "quiet")
     for number, line in enumerate(_filled(spans, max(1, width - indent))):
