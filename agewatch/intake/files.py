@@ -47,16 +47,14 @@ def _fixed_part(pattern: str) -> Path:
 def read_whole(feed: str, name: str, folder: Path) -> bytes:
     """The content of a regular file that nobody wrote to meanwhile. Raises FeedError."""
     try:
-        # Opening a pipe waits for its writer, unless told not to.
-        descriptor = os.open(folder / name, os.O_RDONLY | os.O_NONBLOCK | os.O_CLOEXEC)
-        with open(descriptor, "rb") as file:
-            before = os.fstat(descriptor)
+        with open(folder / name, "rb", opener=_at_once) as file:
+            before = os.fstat(file.fileno())
             if not stat.S_ISREG(before.st_mode):
                 raise FeedError(feed, name, "is no regular file; name a file")
             if before.st_size > LARGEST_BYTES:
                 raise FeedError(feed, name, f"is larger than {LARGEST_BYTES >> 20} MB; split it")
             content = file.read(before.st_size + 1)
-            after = os.fstat(descriptor)
+            after = os.fstat(file.fileno())
     except OSError as fault:
         raise FeedError(
             feed, name, f"{fault.strerror}; {_REMEDY.get(type(fault), 'see to the disk')}"
@@ -75,3 +73,8 @@ _REMEDY: dict[type[OSError], str] = {
     PermissionError: "let the user that runs agewatch read it",
     IsADirectoryError: "name a file",
 }
+
+
+def _at_once(path: str, flags: int) -> int:
+    """Opening a pipe waits for its writer, unless told not to."""
+    return os.open(path, flags | os.O_NONBLOCK)

@@ -76,7 +76,7 @@ class _Reading:
         whole = [
             record
             for record in together
-            if (len(record[2]) == width and record[2][0]) or self._is_whole(record)
+            if (len(record[2]) == width and record[2][0].strip()) or self._is_whole(record)
         ]
         if not whole:
             return

@@ -12,7 +12,7 @@ from agewatch.errors import FeedError
 
 SEPARATORS = (",", ";", "\t")
 
-_SEPARATOR_LINE = re.compile(r"sep=(.)\r?\n?")
+_SEPARATOR_LINE = re.compile(r"sep=([^\w\s\"]|\t)\r?\n?")
 
 Record = tuple[int, int, list[str]]
 """First line, line after the last (counted from 0), and the cells: none when the line is blank or its quotes do not
@@ -60,12 +60,13 @@ def open_sheet(feed: str, source: str, text: str, separator: str, needed: Collec
     """The sheet in `text`. `separator` "auto" takes the one by which the header has the `needed` names, else the one
     by which it has the most. Raises FeedError when there is no header."""
     lines = _lines(text.removeprefix("\ufeff"))
-    start = 0
-    if lines and (declared := _SEPARATOR_LINE.fullmatch(lines[0])):
-        start = 1
-        separator = declared[1] if separator == "auto" else separator
+    declared = _SEPARATOR_LINE.fullmatch(lines[0]) if lines else None
+    if declared and separator == "auto":
+        separator = declared[1]
+    start = 1 if declared else 0
     while start < len(lines) and not lines[start].strip():
         start += 1
+    begin = 0 if declared else start
     if start == len(lines):
         raise FeedError(feed, source, "is empty: not even a header stands in it; write the header at least")
     choices = SEPARATORS if separator == "auto" else (separator,)
@@ -74,7 +75,7 @@ def open_sheet(feed: str, source: str, text: str, separator: str, needed: Collec
         choices, key=lambda choice: (set(needed) <= set(headers[choice][0]), len(headers[choice][0]))
     )
     names, after = headers[separator]
-    return Sheet(lines, separator, names, _raw(lines, start, after), after)
+    return Sheet(lines, separator, names, _raw(lines, begin, after), after)
 
 
 def _header(lines: list[str], start: int, separator: str) -> tuple[list[str], int]:
@@ -113,12 +114,28 @@ def _paired(lines: list[str], start: int, separator: str, width: int) -> Iterato
     with suppress(csv.Error):  # the caller sees at which line it ended
         for cells in reader:
             after = base + reader.line_num
-            if after - start > 1 and _swallows(lines[start + 1 : after], separator, width):
+            if after - start > 1 and width and _swallows(cells, lines[start + 1 : after], separator, width):
                 return
             yield start, after, cells
             start = after
 
 
-def _swallows(further: list[str], separator: str, width: int) -> bool:
-    """Whether the further lines of a record look like records of their own."""
-    return width > 1 and any(line.count(separator) >= width - 1 for line in further)
+def _swallows(cells: list[str], further: list[str], separator: str, width: int) -> bool:
+    """Whether a record of several lines looks like several records that stray quotes made one of."""
+    if len(cells) != width:
+        return any(line.count(separator) >= width - 1 for line in further)
+    return any(
+        _are_records(place, cell.split("\n"), separator, width)
+        for place, cell in enumerate(cells)
+        if "\n" in cell
+    )
+
+
+def _are_records(place: int, parts: list[str], separator: str, width: int) -> bool:
+    """Whether the lines of a cell in column `place` hold the rest of one record, others whole, and the start of one."""
+    start, *between, end = parts
+    return (
+        start.count(separator) >= width - 1 - place
+        and end.count(separator) >= place
+        and all(line.count(separator) >= width - 1 for line in between if line.strip())
+    )
