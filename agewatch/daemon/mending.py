@@ -85,7 +85,8 @@ def _take_in(
 
 def _rows(desk: Desk, stored: StoredReject, text: str, feed: Feed) -> list[Row] | str:
     """The rows that the mended text makes, or what is still wrong with it."""
-    sheet = f"{stored.reject.header.rstrip()}\n{text.rstrip()}\n"
+    row = text.rstrip("\r\n")  # tabs at its end are empty cells
+    sheet = f"{stored.reject.header}\n{row}\n"
     try:
         parsed = parse_rows(feed, sheet, stored.reject.source, now_s=past_until_s(desk.clock))
     except FeedError as error:
